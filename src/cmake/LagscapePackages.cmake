@@ -1,0 +1,10 @@
+# The libraries we borrow; all from Debian (see jobs/setup_debian.sh for the package names).
+find_package(OpenMP REQUIRED COMPONENTS CXX)
+find_package(Eigen3 3.4 REQUIRED NO_MODULE)
+find_package(CLI11 REQUIRED)
+find_package(fmt REQUIRED)
+find_package(Boost REQUIRED)
+find_package(PkgConfig REQUIRED)
+pkg_check_modules(netcdf_cxx REQUIRED IMPORTED_TARGET netcdf-cxx4 netcdf)
+pkg_check_modules(udunits REQUIRED IMPORTED_TARGET udunits)
+find_path(TOMLPLUSPLUS_INCLUDE toml++/toml.h REQUIRED)
