@@ -1,5 +1,5 @@
 #pragma once
-#include <array>
+#include <cstddef>
 #include <cstdint>
 #include <memory>
 #include <optional>
@@ -25,12 +25,12 @@ class TomlReader {
   [[nodiscard]] bool is_text(const std::string& key) const;
   [[nodiscard]] bool is_table(const std::string& key) const;
   [[nodiscard]] std::size_t array_size(const std::string& key) const;  ///< 0 if absent or not an array
-  std::optional<std::string> text(const std::string& key);
-  std::optional<double> number(const std::string& key);                 ///< integers count as numbers
+  std::optional<std::string> text(const std::string& key);              ///< TOML dates count as their ISO text
+  std::optional<double> number(const std::string& key);                 ///< finite; integers count as numbers
   std::optional<std::int64_t> integer(const std::string& key);
   std::optional<bool> boolean(const std::string& key);
   std::optional<std::vector<std::string>> texts(const std::string& key);    ///< a single text counts as a list of one
-  std::optional<std::vector<double>> numbers(const std::string& key);
+  std::optional<std::vector<double>> numbers(const std::string& key);       ///< inf is accepted (open ranges), nan is not
   std::optional<std::string> choice(const std::string& key, const std::vector<std::string>& allowed);  ///< with did-you-mean
   [[nodiscard]] std::vector<std::string> keys(const std::string& table) const;
 
