@@ -30,22 +30,24 @@ struct TimeStep {
 class TimeAxis {
  public:
   TimeAxis() = default;
-  /// origin: nominal time of step 0.
-  TimeAxis(Calendar calendar, TimeStep step, Seconds origin, std::size_t size);
+  /// origin: nominal time of step 0. day_of_month: nominal day of calendar-month and yearly steps where it is not the
+  /// origin's own (31 = the last day of every month, also when the axis begins in February); 0 = the origin's.
+  TimeAxis(Calendar calendar, TimeStep step, Seconds origin, std::size_t size, int day_of_month = 0);
 
   [[nodiscard]] Calendar calendar() const noexcept { return calendar_; }
   [[nodiscard]] TimeStep step() const noexcept { return step_; }
   [[nodiscard]] std::size_t size() const noexcept { return size_; }
   /// Nominal time of step t (monthly: same day of month and time of day as the origin, clamped to the month's length).
-  [[nodiscard]] Seconds time(std::size_t t) const;
-  /// Step whose slot holds this time: nearest step for fixed lengths, same month or year for calendar steps.
+  [[nodiscard]] Seconds time(std::size_t t) const { return nominal(static_cast<std::int64_t>(t)); }
+  /// Step whose slot holds this time: nearest step for fixed lengths, same month or year for calendar steps (a slot of k
+  /// months begins with the month of its nominal time).
   /// May be negative or >= size(); off_seconds receives the distance from the nominal time when given.
   [[nodiscard]] std::int64_t index_of(Seconds time, Seconds* off_seconds = nullptr) const;
   /// Axis of steps [first, first + count).
   [[nodiscard]] TimeAxis slice(std::size_t first, std::size_t count) const;
 
   /// Calendar-month season of step t: 0..11 for steps of one month or shorter; for steps of k months (k divides 12)
-  /// 0..12/k-1; always 0 for yearly steps.
+  /// 0..12/k-1; always 0 for yearly steps and for k months where k does not divide 12.
   [[nodiscard]] int season_of(std::size_t t) const;
   [[nodiscard]] int seasons() const;
   /// Phase in the year, [0, 1): (day of year - 1 + day fraction) / length of that year.
@@ -68,10 +70,13 @@ class TimeAxis {
   friend bool operator==(const TimeAxis&, const TimeAxis&) = default;
 
  private:
+  [[nodiscard]] Seconds nominal(std::int64_t index) const;
+
   Calendar calendar_ = Calendar::standard;
   TimeStep step_;
   Seconds origin_ = 0;
   std::size_t size_ = 0;
+  int day_of_month_ = 0;
 };
 
 }  // namespace lagscape
