@@ -1,5 +1,6 @@
 #include "lagscape/grid/calendar.h"
 
+#include <algorithm>
 #include <array>
 #include <charconv>
 #include <fmt/format.h>
@@ -174,6 +175,14 @@ std::int64_t month_number(Calendar calendar, const Date& date) {
 Date month_start(Calendar calendar, std::int64_t month) {
   const std::int64_t year = floor_div(month, 12);
   return {written_year(calendar, year), static_cast<int>(month - year * 12) + 1, 1};
+}
+
+Seconds add_months(Calendar calendar, Seconds time, std::int64_t months, int day_of_month) {
+  const auto [from, clock] = moment_of(calendar, time);
+  Date date = month_start(calendar, month_number(calendar, from) + months);
+  date.day = std::min(day_of_month > 0 ? day_of_month : from.day, days_in_month(calendar, date.year, date.month));
+  while (!valid_date(calendar, date)) --date.day;  // the ten days of 1582 that the standard calendar left out
+  return seconds_of(calendar, date, clock);
 }
 
 std::string iso_text(Calendar calendar, Seconds time) {

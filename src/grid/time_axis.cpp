@@ -1,6 +1,5 @@
 #include "lagscape/grid/time_axis.h"
 
-#include <algorithm>
 #include <array>
 #include <cctype>
 #include <fmt/format.h>
@@ -25,11 +24,18 @@ constexpr std::array<FixedUnit, 4> kFixedUnits{{{kDay, "day", "daily", "P", 'D'}
                                                 {1, "second", "every second", "PT", 'S'}}};
 
 // The longest unit that divides the step.
-const FixedUnit& fixed_unit(Seconds step) {
+const FixedUnit& dividing_unit(Seconds step) {
   for (const FixedUnit& unit : kFixedUnits)
     if (step % unit.seconds == 0) return unit;
   return kFixedUnits.back();
 }
+
+// The unit for people: days for long steps that are no whole number of hours (36 a year: 10.146 days).
+const FixedUnit& spoken_unit(Seconds step) {
+  return step >= 2 * kDay && step % 3600 != 0 ? kFixedUnits.front() : dividing_unit(step);
+}
+
+double spoken_count(Seconds step) { return static_cast<double>(step) / static_cast<double>(spoken_unit(step).seconds); }
 
 // One "12H" of a duration: unit and count of seconds, months or years; nothing for an unknown letter.
 std::optional<TimeStep> duration_part(std::int64_t count, char letter, bool clock) {
@@ -71,15 +77,16 @@ std::optional<TimeStep> parse_duration(std::string_view text) {
 std::string duration_text(TimeStep step) {
   if (step.kind == StepKind::years) return fmt::format("P{}Y", step.count);
   if (step.kind == StepKind::months) return fmt::format("P{}M", step.count);
-  const FixedUnit& unit = fixed_unit(step.count);
+  const FixedUnit& unit = dividing_unit(step.count);
   return fmt::format("{}{}{}", unit.prefix, step.count / unit.seconds, unit.letter);
 }
 
 std::string step_words(TimeStep step) {
   if (step.kind == StepKind::years) return step.count == 1 ? "yearly" : fmt::format("every {} years", step.count);
   if (step.kind == StepKind::months) return step.count == 1 ? "monthly" : fmt::format("every {} months", step.count);
-  const FixedUnit& unit = fixed_unit(step.count);
-  return step.count == unit.seconds ? unit.every_one : fmt::format("every {} {}s", step.count / unit.seconds, unit.name);
+  const FixedUnit& unit = spoken_unit(step.count);
+  if (step.count == unit.seconds) return unit.every_one;
+  return fmt::format("every {} {}s", human_number(spoken_count(step.count), 5), unit.name);
 }
 
 TimeAxis::TimeAxis(Calendar calendar, TimeStep step, Seconds origin, std::size_t size, int day_of_month)
@@ -89,11 +96,7 @@ TimeAxis::TimeAxis(Calendar calendar, TimeStep step, Seconds origin, std::size_t
 
 Seconds TimeAxis::nominal(std::int64_t index) const {
   if (step_.kind == StepKind::seconds) return origin_ + index * step_.count;
-  const Moment first = moment_of(calendar_, origin_);
-  Date date = month_start(calendar_, month_number(calendar_, first.date) + index * months_per_step(step_));
-  date.day = std::min(day_of_month_, days_in_month(calendar_, date.year, date.month));
-  while (!valid_date(calendar_, date)) --date.day;  // the ten days of 1582 that the standard calendar left out
-  return seconds_of(calendar_, date, first.clock);
+  return add_months(calendar_, origin_, index * months_per_step(step_), day_of_month_);
 }
 
 std::int64_t TimeAxis::index_of(Seconds time, Seconds* off_seconds) const {
@@ -147,12 +150,11 @@ double TimeAxis::steps_per_year() const {
 std::string TimeAxis::lag_unit() const {
   if (step_.kind == StepKind::years) return "year";
   if (step_.kind == StepKind::months) return "month";
-  return fixed_unit(step_.count).name;
+  return spoken_unit(step_.count).name;
 }
 
 double TimeAxis::lag_unit_per_step() const {
-  const Seconds unit = step_.kind == StepKind::seconds ? fixed_unit(step_.count).seconds : 1;
-  return static_cast<double>(step_.count / unit);
+  return step_.kind == StepKind::seconds ? spoken_count(step_.count) : static_cast<double>(step_.count);
 }
 
 }  // namespace lagscape

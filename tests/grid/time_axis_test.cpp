@@ -43,6 +43,7 @@ TEST(Duration, WordsForPeople) {
   EXPECT_EQ(step_words({StepKind::seconds, 21600}), "every 6 hours");
   EXPECT_EQ(step_words({StepKind::months, 3}), "every 3 months");
   EXPECT_EQ(step_words({StepKind::seconds, 3600}), "hourly");
+  EXPECT_EQ(step_words({StepKind::seconds, 10 * kDay + 8640}), "every 10.1 days");
 }
 
 TEST(TimeAxis, MonthlyStepsKeepTheDayOfTheMonthWhereItExists) {
@@ -164,6 +165,8 @@ TEST(TimeAxis, LagsAreGivenInTheLongestUnitThatDividesTheStep) {
   EXPECT_EQ(unit(kDaily), std::pair(std::string("day"), 1.0));
   EXPECT_EQ(unit({StepKind::seconds, 21600}), std::pair(std::string("hour"), 6.0));
   EXPECT_EQ(unit({StepKind::seconds, 900}), std::pair(std::string("minute"), 15.0));
+  EXPECT_EQ(unit({StepKind::seconds, 10 * kDay + 21600}), std::pair(std::string("hour"), 246.0));
+  EXPECT_EQ(unit({StepKind::seconds, 10 * kDay + 8640}), std::pair(std::string("day"), 10.1));
   EXPECT_EQ(unit({StepKind::seconds, 61}), std::pair(std::string("second"), 61.0));
 }
 

@@ -43,6 +43,9 @@ struct Moment {
 /// and the first day of such a month.
 [[nodiscard]] std::int64_t month_number(Calendar calendar, const Date& date);
 [[nodiscard]] Date month_start(Calendar calendar, std::int64_t month);
+/// The same time of day `months` calendar months later (negative: earlier), on the same day of the month, or on
+/// `day_of_month` if given, clamped to the length of the month.
+[[nodiscard]] Seconds add_months(Calendar calendar, Seconds time, std::int64_t months, int day_of_month = 0);
 /// Division rounded towards minus infinity, so that times before the epoch fall on the right day.
 constexpr std::int64_t floor_div(std::int64_t a, std::int64_t b) { return a / b - (a % b != 0 && (a < 0) != (b < 0) ? 1 : 0); }
 

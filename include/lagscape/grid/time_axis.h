@@ -61,7 +61,8 @@ class TimeAxis {
 
   /// Unit in which lags and memory times are given: "month", "year", "day", "hour", "minute", "second" ...
   [[nodiscard]] std::string lag_unit() const;
-  /// ... and how many of them one step is (3-monthly: 3; 6-hourly: 6; daily: 1).
+  /// ... and how many of them one step is (3-monthly: 3; 6-hourly: 6; daily: 1; steps of 2 days and more that are no whole
+  /// number of hours are given in days and fractions).
   [[nodiscard]] double lag_unit_per_step() const;
   [[nodiscard]] std::string label(std::size_t t) const { return iso_text(calendar_, time(t)); }
   /// CF reference for times written to results: "days since 1970-01-01 00:00:00".
