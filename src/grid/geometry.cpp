@@ -1,8 +1,8 @@
 #include "lagscape/grid/geometry.h"
 
-#include <algorithm>
 #include <cmath>
 #include <fmt/format.h>
+#include <limits>
 #include <span>
 
 #include "lagscape/base/text.h"
@@ -24,7 +24,7 @@ std::string degrees(double lat, double lon) {
 
 // "lat -89.5 to 89.5", or nothing where no value is finite.
 std::string range(const std::string& name, std::span<const double> values, const std::string& unit) {
-  double low = NAN, high = NAN;
+  double low = std::numeric_limits<double>::quiet_NaN(), high = low;
   for (const double value : values) {
     low = std::fmin(low, value);  // fmin and fmax pass over NaN
     high = std::fmax(high, value);

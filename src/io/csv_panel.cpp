@@ -61,6 +61,9 @@ void check_names(const CsvReader& reader) {
   if (header.size() < 2)
     throw Error(ErrorKind::input, fmt::format("the header has {} column, expected a date and one column a site", header.size()), where,
                 "separate columns by comma, semicolon or tab");
+  if (const std::string second = lower(header[1]); second == "month" || second == "day" || second == "hour")
+    throw Error(ErrorKind::input, fmt::format("column 2 is named '{}': the date seems to be spread over several columns", header[1]),
+                where, "write the date into the first column, as 1981-01-31");
   std::set<std::string> seen;
   for (std::size_t c = 1; c < header.size(); ++c) {
     if (header[c].empty())
@@ -207,7 +210,7 @@ void add_coordinates(const std::string& path, Geometry& geometry, std::vector<st
 }
 
 bool in_box(const std::array<double, 4>& box, double lat, double lon) {
-  const auto [west, south, east, north] = box;
+  const double west = box[0], south = box[1], east = box[2], north = box[3];
   const auto turned = [&](double degrees) { return degrees - 360 * std::floor((degrees - west) / 360); };  // into [west, west + 360)
   return lat >= south && lat <= north && (east - west >= 360 || turned(lon) <= turned(east));
 }

@@ -112,9 +112,10 @@ std::optional<StepFit> average_fixed(std::span<const Seconds> times, std::span<c
 std::optional<StepFit> find_fixed(std::span<const Seconds> times) {
   const std::vector<Seconds> all = gaps_between(times);
   const Seconds typical = median(all);
-  std::vector<Seconds> gaps;  // without the noise between copies of one time
-  for (const Seconds gap : all)
-    if (as_double(gap) > kTogether * as_double(typical)) gaps.push_back(gap);
+  std::vector<Seconds> distinct{times.front()};  // without the noisy copies of a time
+  for (const Seconds time : times)
+    if (as_double(time - distinct.back()) > kTogether * as_double(typical)) distinct.push_back(time);
+  const std::vector<Seconds> gaps = gaps_between(distinct);
   const auto shortest = as_double(*std::min_element(gaps.begin(), gaps.end()));
   std::vector<Seconds> sorted = gaps;
   std::sort(sorted.begin(), sorted.end());

@@ -117,8 +117,8 @@ void note_order(const std::vector<FileTimes>& files, std::vector<std::string>& n
               fmt::format("times are not equally spaced: the commonest step is {} ({} of {}), but one of {} follows {}",
                           seconds(common), most, gaps.size(), seconds(gaps[at]), iso_text(stamps.calendar(), times[at])),
               fmt::format("between {} and {}", stamps.place(times[at]), stamps.place(times[at + 1])),
-              fmt::format("average the values to equal steps first; or, if the stamps are only inexact, name the step: [input] "
-                          "time = {{ step = \"{}\" }}",
+              fmt::format("average the values to equal steps first; or, if the stamps are only inexact (by less than a quarter "
+                          "of a step), name the step: [input] time = {{ step = \"{}\" }}",
                           duration_text({StepKind::seconds, common})));
 }
 
@@ -193,7 +193,7 @@ void note_shift(const Stamps& stamps, const StepFit& fit, std::vector<std::strin
   constexpr double kMonthStamps = 0.06;  // mid-month stamps (14th .. 16th) are all the same month to anybody
   const bool calendar_step = fit.step.kind != StepKind::seconds;
   if (calendar_step ? fit.largest_shift <= kMonthStamps : fit.largest_shift * per_step <= 1) return;
-  notes.push_back(fmt::format("times snapped to {} steps, the largest shift is {}", step_words(fit.step),
+  notes.push_back(fmt::format("times snapped to equal steps ({}), the largest shift is {}", step_words(fit.step),
                               span_text(fit.largest_shift * per_step)));
 }
 

@@ -317,6 +317,7 @@ TEST_F(CsvPanel, BadCellsAreNamedByFileLineAndColumn) {
       {"date,a,,b\n2001-01-01,3,4,5\n", "column 3 has no name"},
       {"date\n2001-01-01\n", "the header has 1 column, expected a date and one column a site"},
       {"date,a\n2001-01-01,\"3\n", "a quote is opened but not closed"},
+      {"year,Month,a\n1981,1,5\n1981,2,5\n", "the date seems to be spread over several columns"},
       {"", "the file holds no table"},
       {"# only a comment\n", "the file holds no table"},
       {"date,a\n", "no file holds a time step"},

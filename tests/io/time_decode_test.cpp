@@ -1,15 +1,16 @@
 #include "io/time_decode.h"
 
 #include <algorithm>
-#include <cmath>
 #include <gtest/gtest.h>
-#include <numeric>
+#include <limits>
 #include <random>
 
 #include "lagscape/base/error.h"
 
 namespace lagscape {
 namespace {
+
+constexpr double kNaN = std::numeric_limits<double>::quiet_NaN(), kInfinity = std::numeric_limits<double>::infinity();
 
 FileTimes decode(const std::vector<double>& values, const std::string& units, const std::string& calendar = "",
                  std::vector<std::string>* notes = nullptr) {
@@ -220,11 +221,11 @@ TEST(TimeValues, WrittenDaysAreReadAsDates) {
 }
 
 TEST(TimeValues, MissingAndAbsurdValuesNameTheirStep) {
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({0, NAN, 2}, "days since 1981-01-01")); }), "time value 2 of 3: nan is missing");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({0, kNaN, 2}, "days since 1981-01-01")); }), "time value 2 of 3: nan is missing");
   EXPECT_HAS(message_of([] { static_cast<void>(decode({0, 1, 9.969209968386869e36}, "days since 1981-01-01")); }),
              "lies beyond any date");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({HUGE_VAL}, "months since 1981-01-01")); }), "lies beyond any date");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({-HUGE_VAL}, "day as %Y%m%d.%f")); }), "lies beyond any date");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({kInfinity}, "months since 1981-01-01")); }), "lies beyond any date");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({-kInfinity}, "day as %Y%m%d.%f")); }), "lies beyond any date");
 }
 
 TEST(TimeValues, EverySecondOfALargeDayNumberSurvivesTheRoundTrip) {
@@ -357,7 +358,7 @@ TEST(Join, HoursStoredAsFloat32DaysAreSnapped) {
   expect_axis(joined, "PT1H", "1989-08-20", "1989-09-30T15:00:00", 1000);
   EXPECT_EQ(joined.steps_present, 1000U);
   ASSERT_EQ(joined.notes.size(), 1U);
-  EXPECT_HAS(joined.notes[0], "times snapped to hourly steps, the largest shift is");
+  EXPECT_HAS(joined.notes[0], "times snapped to equal steps (hourly), the largest shift is");
 }
 
 TEST(Join, JitterIsSnappedAndTheLargestShiftNoted) {
@@ -370,6 +371,19 @@ TEST(Join, JitterIsSnappedAndTheLargestShiftNoted) {
   const JoinedAxis joined = join_times({file}, std::nullopt, std::nullopt);
   expect_axis(joined, "PT1H", "2001-01-01", "2001-05-05T23:00:00", 3000);
   EXPECT_HAS(joined.notes.at(0), "largest shift is 8.3");
+}
+
+TEST(Join, ThirtySixStampsAYearAreEvenOnAverageAndTheShiftIsSaid) {
+  std::vector<std::string> stamps;
+  for (int year = 2001; year < 2005; ++year)
+    for (int month = 1; month <= 12; ++month)
+      for (const int day : {1, 11, 21}) stamps.push_back(iso_text(Calendar::standard, seconds_of(Calendar::standard, {year, month, day})));
+  const JoinedAxis joined = join_one(stamps);
+  EXPECT_EQ(joined.axis.size(), 144U);
+  EXPECT_EQ(joined.steps_present, 144U);
+  EXPECT_EQ(joined.axis.lag_unit(), "day");
+  EXPECT_NEAR(joined.axis.lag_unit_per_step(), 1461.0 / 144, 0.03);
+  EXPECT_HAS(joined.notes.at(0), "the largest shift is");
 }
 
 TEST(Join, UnevenTimesAreRefusedWithTheGapThatBreaksThePattern) {
@@ -425,6 +439,17 @@ TEST(Join, OverlapsAreListedAgainstTheFirstHolder) {
   EXPECT_EQ(joined.overlaps[1].file_b, 1U);
   EXPECT_EQ(joined.overlaps[1].step_b, 0U);
   EXPECT_EQ(joined.steps_present, 4U);
+}
+
+TEST(Join, CopiesOfATimeThatDifferByRoundingNoiseOverlap) {
+  FileTimes a{"a.nc", Calendar::standard, {}}, b{"b.nc", Calendar::standard, {}};
+  const Seconds first = seconds_of(Calendar::standard, {2001, 1, 1});
+  for (int t = 0; t < 48; ++t) a.times.push_back(first + t * 3600);
+  for (int t = 40; t < 80; ++t) b.times.push_back(first + t * 3600 + (t % 3 - 1) * 20);
+  const JoinedAxis joined = join_times({a, b}, std::nullopt, std::nullopt);
+  expect_axis(joined, "PT1H", "2001-01-01", "2001-01-04T07:00:00", 80);
+  EXPECT_EQ(joined.overlaps.size(), 8U);
+  EXPECT_EQ(joined.steps_present, 80U);
 }
 
 TEST(Join, TimesOutOfOrderAreSortedAndNoted) {
