@@ -140,7 +140,7 @@ TEST_F(CsvPanel, SeparatorsQuotesCommentsAndLineEndsOfEveryKindAreRead) {
       "date,\"Weir, upper\",b\n2001-01-01,1,2\n2001-01-02,3,4\n",
       "date;Weir, upper;b\n2001-01-01;1;2\n2001-01-02;3;4\n",
       "date\tWeir, upper\tb\n2001-01-01\t1\t2\n2001-01-02\t3\t4",
-      "\xEF\xBB\xBF" "date,\"Weir, upper\",b\r\n2001-01-01,1,2\r\n2001-01-02,3,4\r\n",
+      ("\xEF\xBB\xBF" "date,\"Weir, upper\",b\r\n2001-01-01,1,2\r\n2001-01-02,3,4\r\n"),
       "date,\"Weir, upper\",b\r2001-01-01,1,2\r2001-01-02,3,4\r",
       "# a comment\n\n  # and another\ndate , \"Weir, upper\" , b\n\n\"2001-01-01\", \"1\" ,2\n#2001-01-05,7,7\n 2001-01-02 ,3,4\n\n",
       "date,\"Weir, upper\",b,\n2001-01-01,1,2,\n2001-01-02,3,4,,\n",
