@@ -1,0 +1,176 @@
+#include "cli/commands.h"
+
+#include <fmt/format.h>
+#include <unistd.h>
+
+#include <csignal>
+#include <cstdio>
+#include <filesystem>
+#include <fstream>
+#include <functional>
+
+#include "cli/progress.h"
+#include "lagscape/base/error.h"
+#include "lagscape/base/text.h"
+#include "lagscape/forge/forge.h"
+#include "lagscape/io/survey.h"
+#include "lagscape/job/job_file.h"
+#include "lagscape/pipeline/run.h"
+#include "lagscape/report/render.h"
+
+namespace lagscape {
+namespace {
+
+namespace fs = std::filesystem;
+
+volatile std::sig_atomic_t interrupted = 0;
+
+/// The first Ctrl-C asks the run to stop and tidy up; the second one ends the program at once.
+void watch_for_interrupt() {
+  struct sigaction action {};
+  action.sa_handler = [](int) { interrupted = 1; };
+  action.sa_flags = SA_RESTART | static_cast<int>(SA_RESETHAND);
+  sigaction(SIGINT, &action, nullptr);
+  sigaction(SIGTERM, &action, nullptr);
+}
+
+void stop_if_interrupted() {
+  if (interrupted != 0) throw Error(ErrorKind::interrupted, "interrupted; no unfinished result is left");
+}
+
+/// Warnings and notes on stderr; the progress line makes room for them.
+Log log_to_stderr(bool quiet, ProgressLine& progress) {
+  return {[quiet, &progress](Log::Level level, const std::string& text) {
+    if (quiet && level == Log::Level::note) return;
+    progress.clear();
+    fmt::print(stderr, "{}: {}\n", level == Log::Level::warning ? "warning" : "note", text);
+  }};
+}
+
+void print(const std::string& text) {
+  fmt::print("{}", text);
+  if (std::fflush(stdout) != 0) {
+    throw Error(ErrorKind::output, "the output could not be written", "standard output",
+                "check where it is sent to and whether that disk is full");
+  }
+}
+
+/// All jobs, read and checked before anything runs; the problems of all of them are told together.
+std::vector<JobSpec> read_jobs(const CommandLine& line) {
+  std::vector<JobSpec> jobs;
+  std::string problems;
+  for (const std::string& path : line.arguments) {
+    try {
+      jobs.push_back(read_job(path, line.overrides));
+    } catch (const Error& error) {
+      if (error.kind() != ErrorKind::job || line.arguments.size() == 1) throw;
+      problems += fmt::format("\n{}", error.what());
+    }
+  }
+  if (!problems.empty()) throw Error(ErrorKind::job, "not every job can be run, so none was" + problems);
+  return jobs;
+}
+
+/// The command for `history`: what was asked for, without what cannot change a result (resources, paths).
+std::string history_command(const CommandLine& line, const std::string& job) {
+  std::string command = fmt::format("lagscape {} {}", line.command, fs::path(job).filename().string());
+  for (const std::string& option : line.overrides) {
+    const std::string key(trim(option.substr(0, option.find('='))));
+    const bool path =
+        key == "output.file" || key == "input.files" || key == "input.sites" || key.starts_with("input.mask");
+    if (!path) command += fmt::format(" --set {}", option);
+  }
+  return command;
+}
+
+RunOptions run_options(const CommandLine& line, const std::string& job) {
+  RunOptions options;
+  options.threads = line.threads;
+  options.memory_bytes = line.memory_bytes;
+  options.replace = line.replace;
+  options.command = history_command(line, job);
+  return options;
+}
+
+/// Written beside and renamed: a job file under its name is always complete.
+void write_job(const std::string& path, const std::string& text, bool replace) {
+  std::error_code problem;
+  if (!replace && fs::exists(path, problem)) {
+    throw Error(ErrorKind::output, "this job file exists already", path,
+                "give another name, or --replace to overwrite it");
+  }
+  const std::string part = path + ".part";
+  std::ofstream file(part, std::ios::binary);
+  file << text;
+  file.close();
+  if (file) fs::rename(part, path, problem);
+  if (!file || problem) {
+    std::error_code ignored;
+    fs::remove(part, ignored);
+    throw Error(ErrorKind::output, "the job file could not be written", path,
+                "check that its folder exists and may be written to");
+  }
+}
+
+void survey(const CommandLine& line) {
+  ProgressLine none(false);
+  const SurveyReport report = survey_files(line.arguments, line.sites, log_to_stderr(line.quiet, none));
+  if (!line.write_job.empty()) write_job(line.write_job, starter_job(report, line.write_job, line.sites), line.replace);
+  print(line.json ? survey_json(report) : survey_text(report, line.sites, line.write_job));
+}
+
+void plan(const CommandLine& line) {
+  ProgressLine none(false);
+  const Log log = log_to_stderr(line.quiet, none);
+  std::vector<JobPlan> plans;
+  for (const JobSpec& job : read_jobs(line)) {
+    for (JobPlan& made : plan_job(job, run_options(line, job.path), log)) {
+      if (!line.json) print((plans.empty() ? "" : "\n") + plan_text(made));
+      plans.push_back(std::move(made));
+    }
+  }
+  if (line.json) print(plan_json(plans));
+}
+
+void run(const CommandLine& line) {
+  watch_for_interrupt();
+  ProgressLine progress(!line.quiet && isatty(STDERR_FILENO) != 0);
+  const Log log = log_to_stderr(line.quiet, progress);
+  const auto show = [&](std::size_t done, std::size_t total, double seconds) {
+    stop_if_interrupted();
+    progress.update(done, total, seconds);
+  };
+  std::vector<RunReport> reports;
+  for (const JobSpec& job : read_jobs(line)) {
+    stop_if_interrupted();
+    for (RunReport& made : run_job(job, run_options(line, job.path), log, show)) {
+      progress.clear();
+      if (!line.json) print((reports.empty() ? "" : "\n") + summary_text(made));
+      reports.push_back(std::move(made));
+    }
+  }
+  if (line.json) print(summary_json(reports));
+}
+
+void forge(const CommandLine& line) {
+  ProgressLine none(false);
+  const ForgeReport report =
+      forge_recipe(line.arguments.front(), line.overrides, line.replace, log_to_stderr(line.quiet, none));
+  std::string text = report.description;
+  if (!text.empty() && text.back() != '\n') text += '\n';
+  for (const std::string& file : report.files) text += fmt::format("wrote {}\n", file);
+  print(text);
+}
+
+}  // namespace
+
+void run_command(const CommandLine& line) {
+  if (line.output) return print(*line.output);
+  if (line.command == "survey") return survey(line);
+  if (line.command == "plan") return plan(line);
+  if (line.command == "run") return run(line);
+  if (line.command == "forge") return forge(line);
+  print(explain_text(line.arguments.empty() ? "" : line.arguments.front()));
+}
+
+}  // namespace lagscape
