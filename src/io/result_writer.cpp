@@ -1,0 +1,167 @@
+#include "lagscape/io/result_writer.h"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <filesystem>
+#include <utility>
+
+#include "io/result_writer_csv.h"
+#include "io/result_writer_netcdf.h"
+#include "io/result_writer_parts.h"
+#include "io/result_writer_spool.h"
+#include "lagscape/base/error.h"
+
+namespace lagscape {
+namespace {
+
+std::string companion(const std::string& path, const std::string& ending) {
+  const std::filesystem::path name(path);
+  return (name.parent_path() / (name.stem().string() + ending)).string();
+}
+
+// What one file of a result holds.
+struct Member {
+  enum class Kind { netcdf, csv } kind;
+  std::string path;
+  std::vector<std::size_t> maps;
+};
+
+// Sites: GIS sees points only in a file whose variables all run over the sites alone, so cubes go into a file of their
+// own.
+std::vector<Member> members_of(const std::string& path, const MapSet& set) {
+  std::vector<std::size_t> all, flat, cubes;
+  for (std::size_t map = 0; map < set.maps.size(); ++map) {
+    all.push_back(map);
+    (set.maps[map].axis == LayerAxis::none ? flat : cubes).push_back(map);
+  }
+  if (!set.geometry.is_sites()) return {{Member::Kind::netcdf, path, all}};
+  std::vector<Member> members{{Member::Kind::netcdf, path, flat}};
+  if (!cubes.empty()) members.push_back({Member::Kind::netcdf, companion(path, "_cubes.nc"), cubes});
+  members.push_back({Member::Kind::csv, companion(path, ".csv"), flat});
+  return members;
+}
+
+// Mistakes of the caller that would make a file no program understands.
+void require_sound(const MapSet& set) {
+  const Geometry& place = set.geometry;
+  const auto bug = [](const std::string& problem, const std::string& where) {
+    throw Error(ErrorKind::internal, problem, where);
+  };
+  if (place.cells() == 0) bug("a result without cells", {});
+  const auto fits = [&](std::size_t size, std::size_t wanted) { return size == 0 || size == wanted; };
+  if (!fits(place.lat.size(), place.cells()) || place.lon.size() != place.lat.size() ||
+      !fits(place.altitude.size(), place.cells()))
+    bug("coordinates that do not fit the number of cells", place.describe());
+  if (place.is_sites() && place.site_names.size() != place.cells()) bug("sites without names", {});
+  if ((place.kind == GeometryKind::latlon || place.kind == GeometryKind::projected) &&
+      (place.y.values.size() != place.rows || place.x.values.size() != place.cols))
+    bug("axes that do not fit the grid", place.describe());
+  for (const MapSpec& map : set.maps)
+    if (set.layers(map) == 0) bug("a cube without layers", "map: " + map.name);
+}
+
+class Result final : public MapSink {
+ public:
+  Result(const std::string& path, const MapSet& set, bool replace)
+      : set_(set),
+        replace_(replace),
+        members_(members_of(path, set)),
+        folder_(std::filesystem::path(path).parent_path()),
+        values_(folder_.path(), set_) {}
+
+  void write(std::size_t map, CellRange cells, std::span<const float> values) override { put(map, cells, values); }
+  void write(std::size_t map, CellRange cells, std::span<const double> values) override { put(map, cells, values); }
+
+  void add_global(const Attributes& attributes) override {
+    require_open();
+    for (const Attribute& one : attributes) {
+      const auto same = std::find_if(set_.global.begin(), set_.global.end(),
+                                     [&](const Attribute& other) { return other.name == one.name; });
+      if (same == set_.global.end())
+        set_.global.push_back(one);
+      else
+        same->value = one.value;
+    }
+  }
+
+  void commit() override {
+    require_open();
+    values_.require_complete();
+    std::vector<std::string> names;
+    for (const Member& member : members_) names.push_back(member.path);
+    refuse_taken_names(names, replace_);  // before the long work of assembling ...
+    std::vector<std::unique_ptr<PartFile>> parts;
+    for (const Member& member : members_) {
+      parts.push_back(std::make_unique<PartFile>(member.path));
+      assemble(member, *parts.back());
+    }
+    refuse_taken_names(names, replace_);  // ... and after it
+    publish(parts);
+    folder_.keep();
+    committed_ = true;
+    folder_.sync();
+  }
+
+ private:
+  template <class Values>
+  void put(std::size_t map, CellRange cells, Values values) {
+    require_open();
+    values_.put(map, cells, values);
+  }
+
+  void require_open() const {
+    if (committed_)
+      throw Error(ErrorKind::internal, "the result is finished already", "file: " + members_.front().path);
+  }
+
+  void assemble(const Member& member, const PartFile& part) const {
+    if (member.kind == Member::Kind::csv) {
+      write_result_csv(part.path(), set_, member.maps, values_);
+    } else {
+      write_result_netcdf(part.path(), set_, member.maps, values_);
+      check_result_netcdf(part.path(), set_, member.maps, values_);
+    }
+    part.sync();
+  }
+
+  // The main file comes last: where it is, its companions are. What cannot be finished is taken back.
+  void publish(std::vector<std::unique_ptr<PartFile>>& parts) const {
+    std::vector<std::string> published;
+    try {
+      for (auto part = parts.rbegin(); part != parts.rend(); ++part) {
+        (*part)->publish();
+        published.push_back((*part)->final_path());
+      }
+    } catch (const Error&) {
+      std::error_code ignored;
+      if (!replace_)
+        for (const std::string& path : published) std::filesystem::remove(path, ignored);
+      throw;
+    }
+  }
+
+  MapSet set_;
+  bool replace_, committed_ = false;
+  std::vector<Member> members_;
+  ResultFolder folder_;
+  ValueSpool values_;
+};
+
+}  // namespace
+
+std::vector<std::string> result_files(const std::string& path, const MapSet& set) {
+  std::vector<std::string> names;
+  for (const Member& member : members_of(path, set)) names.push_back(member.path);
+  return names;
+}
+
+std::unique_ptr<MapSink> create_result(const std::string& path, const MapSet& set, bool replace) {
+  if (std::filesystem::path(path).filename().empty())
+    throw Error(ErrorKind::output, "the result has no file name", "file: " + path, "name a file in output.file");
+  require_sound(set);
+  refuse_taken_names(result_files(path, set), replace);
+  return std::make_unique<Result>(path, set, replace);
+}
+
+}  // namespace lagscape
