@@ -421,25 +421,11 @@ void JobReader::check_output_is_no_input() {
   }
 }
 
-/// A TOML basic string.
-std::string quoted(const std::string& text) {
-  std::string out = "\"";
-  for (const char c : text) {
-    const auto code = static_cast<unsigned char>(c);
-    if (c == '"' || c == '\\') out += fmt::format("\\{}", c);
-    else if (c == '\n') out += "\\n";
-    else if (c == '\t') out += "\\t";
-    else if (code < 0x20 || code == 0x7F) out += fmt::format("\\u{:04X}", static_cast<unsigned>(code));
-    else out += c;
-  }
-  return out + '"';
-}
-
-std::string value_text(const std::string& text) { return quoted(text); }
+std::string value_text(const std::string& text) { return toml_text(text); }
 std::string value_text(double number) { return number_text(number); }
 std::string value_text(const StepsOrDuration& length) {
   return std::holds_alternative<std::int64_t>(length) ? fmt::format("{}", std::get<std::int64_t>(length))
-                                                      : quoted(std::get<std::string>(length));
+                                                      : toml_text(std::get<std::string>(length));
 }
 
 template <class Range>
@@ -461,7 +447,7 @@ class TomlLines {
   template <class Value>
   void add_list(std::string_view key, const Value& values) { line(key, list_text(values)); }
   template <class Enum>
-  void add_choice(std::string_view key, Enum value) { line(key, quoted(choice_word(key, value))); }
+  void add_choice(std::string_view key, Enum value) { line(key, toml_text(choice_word(key, value))); }
   void line(std::string_view key, const std::string& value) {
     const std::size_t dot = key.find('.');
     const std::string table(key.substr(0, dot == std::string_view::npos ? 0 : dot));
@@ -481,7 +467,7 @@ void write_input(const JobSpec::Input& input, TomlLines& lines) {
   lines.add_list("input.files", names);
   if (input.variables.size() == 1) lines.add("input.variable", input.variables.front());
   else lines.add_list("input.variable", input.variables);
-  for (const auto& [dimension, value] : input.select) lines.add("input.select." + quoted(dimension), value);
+  for (const auto& [dimension, value] : input.select) lines.add("input.select." + toml_text(dimension), value);
   if (input.period) lines.add_list("input.period", std::array{input.period->first, input.period->second});
   if (input.box) lines.add_list("input.box", *input.box);
   if (input.mask) {

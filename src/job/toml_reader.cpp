@@ -399,4 +399,17 @@ const std::string& TomlReader::source_text() const { return impl_->source; }
 
 std::string TomlReader::folder() const { return impl_->folder; }
 
+std::string toml_text(const std::string& text) {
+  std::string out = "\"";
+  for (const char c : text) {
+    const auto code = static_cast<unsigned char>(c);
+    if (c == '"' || c == '\\') out += fmt::format("\\{}", c);
+    else if (c == '\n') out += "\\n";
+    else if (c == '\t') out += "\\t";
+    else if (code < 0x20 || code == 0x7F) out += fmt::format("\\u{:04X}", static_cast<unsigned>(code));
+    else out += c;
+  }
+  return out + '"';
+}
+
 }  // namespace lagscape

@@ -37,6 +37,19 @@ std::string listed(std::string_view label, std::string_view text, std::size_t co
   return head + wrapped(text, width, column, column) + "\n";
 }
 
+std::string shell_word(const std::string& word) {
+  constexpr std::string_view kPlain = "ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789_-./,:=+@%";
+  if (!word.empty() && word.find_first_not_of(kPlain) == std::string::npos) return word;
+  std::string out = "'";
+  for (const char c : word) {
+    if (c == '\'')
+      out += "'\\''";
+    else
+      out += c;
+  }
+  return out + "'";
+}
+
 std::string duration_words(double seconds) {
   if (seconds < 9.95) return fmt::format("{:.1f} s", seconds);
   const auto whole = static_cast<long long>(seconds + 0.5);

@@ -49,4 +49,7 @@ class TomlReader {
   std::unique_ptr<Impl> impl_;
 };
 
+/// The text as a TOML basic string, in double quotes.
+[[nodiscard]] std::string toml_text(const std::string& text);
+
 }  // namespace lagscape

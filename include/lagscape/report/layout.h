@@ -14,6 +14,9 @@ namespace lagscape {
 /// own that begins at `column`. Labels that do not fit stand on a line of their own.
 [[nodiscard]] std::string listed(std::string_view label, std::string_view text, std::size_t column, std::size_t width);
 
+/// A word of a shell command, in single quotes only where the shell would not take it as it is.
+[[nodiscard]] std::string shell_word(const std::string& word);
+
 /// A time span for people: "0.4 s", "16 s", "3 min 20 s", "2 h 5 min".
 [[nodiscard]] std::string duration_words(double seconds);
 
