@@ -99,7 +99,9 @@ class JobReader {
   void refuse(const std::string& key, const std::string& found, const std::string& expected) {
     toml_.problem(key, fmt::format("{}: found {}, expected {}", name_of(key), found, expected));
   }
-  void out_of_range(const std::string& key, double value) { refuse(key, number_text(value), range_text(*find_option(key))); }
+  void out_of_range(const std::string& key, double value) {
+    refuse(key, number_text(value), range_text(*find_option(key)));
+  }
 
   void number(const std::string& key, double& target) {
     const auto value = toml_.number(key);
@@ -110,7 +112,8 @@ class JobReader {
   void whole_number(const std::string& key, Integer& target) {
     const auto value = toml_.integer(key);
     if (!value) return;
-    if (!inside(static_cast<double>(*value), find_option(key)->bounds)) return out_of_range(key, static_cast<double>(*value));
+    if (!inside(static_cast<double>(*value), find_option(key)->bounds))
+      return out_of_range(key, static_cast<double>(*value));
     target = static_cast<Integer>(*value);
   }
   template <class Enum>
@@ -157,16 +160,20 @@ std::optional<std::string> JobReader::existing_file(const std::string& key) {
 
 void JobReader::read_files() {
   const auto patterns = toml_.texts("input.files");
-  if (!toml_.has("input.files")) toml_.problem("input.files", "input.files is missing: give paths or globs of the files to read");
+  if (!toml_.has("input.files"))
+    toml_.problem("input.files", "input.files is missing: give paths or globs of the files to read");
   if (patterns && patterns->empty()) refuse("input.files", "an empty list", "paths or globs of the files to read");
   std::vector<std::string>& files = job_.input.files;
   for (const std::string& pattern : patterns.value_or(std::vector<std::string>{})) {
     std::error_code ignored;
     std::vector<std::string> found;
     const std::string literal = resolve("input.files", pattern);
-    if (fs::is_regular_file(literal, ignored)) found = {literal};
-    else found = matches(resolve("input.files", pattern, true));
-    if (found.empty()) refuse("input.files", fmt::format("\"{}\"", pattern), fmt::format("files; nothing matches {}", literal));
+    if (fs::is_regular_file(literal, ignored))
+      found = {literal};
+    else
+      found = matches(resolve("input.files", pattern, true));
+    if (found.empty())
+      refuse("input.files", fmt::format("\"{}\"", pattern), fmt::format("files; nothing matches {}", literal));
     files.insert(files.end(), found.begin(), found.end());
   }
   std::sort(files.begin(), files.end());
@@ -174,11 +181,14 @@ void JobReader::read_files() {
 
   const auto variables = toml_.texts("input.variable");
   if (!toml_.has("input.variable")) {
-    toml_.problem("input.variable", "input.variable is missing: name the variable to analyse; 'lagscape survey FILE' lists them");
+    toml_.problem("input.variable",
+                  "input.variable is missing: name the variable to analyse; 'lagscape survey FILE' lists them");
   }
-  if (variables && (variables->empty() || contains(*variables, ""))) refuse("input.variable", "an empty name or list", "a variable's name");
+  if (variables && (variables->empty() || contains(*variables, "")))
+    refuse("input.variable", "an empty name or list", "a variable's name");
   for (const std::string& name : variables.value_or(std::vector<std::string>{})) {
-    if (contains(job_.input.variables, name)) refuse("input.variable", fmt::format("\"{}\" twice", name), "each variable once");
+    if (contains(job_.input.variables, name))
+      refuse("input.variable", fmt::format("\"{}\" twice", name), "each variable once");
     job_.input.variables.push_back(name);
   }
 }
@@ -198,27 +208,33 @@ void JobReader::read_cells() {
 void JobReader::read_period() {
   const auto dates = toml_.texts("input.period");
   if (!dates) return;
-  if (dates->size() != 2) return refuse("input.period", fmt::format("{} dates", dates->size()), "two: the first and the last to use");
+  if (dates->size() != 2)
+    return refuse("input.period", fmt::format("{} dates", dates->size()), "two: the first and the last to use");
   // Which dates exist is known only with the file's calendar; here it is enough that some calendar has them.
   for (const Calendar calendar : {Calendar::standard, Calendar::all_leap, Calendar::day360}) {
     const auto first = parse_iso(calendar, dates->front());
     const auto last = parse_iso(calendar, dates->back(), true);
     if (!first || !last) continue;
-    if (*first > *last) return refuse("input.period", fmt::format("{} after {}", dates->front(), dates->back()), "the earlier date first");
+    if (*first > *last)
+      return refuse("input.period", fmt::format("{} after {}", dates->front(), dates->back()),
+                    "the earlier date first");
     job_.input.period = {dates->front(), dates->back()};
     return;
   }
-  refuse("input.period", fmt::format("\"{}\" and \"{}\"", dates->front(), dates->back()), "ISO 8601 dates such as \"1981-01-31\"");
+  refuse("input.period", fmt::format("\"{}\" and \"{}\"", dates->front(), dates->back()),
+         "ISO 8601 dates such as \"1981-01-31\"");
 }
 
 void JobReader::read_box() {
   const auto edges = toml_.numbers("input.box");
   if (!edges) return;
   const std::string key = "input.box";
-  if (edges->size() != 4) return refuse(key, fmt::format("{} numbers", edges->size()), "four: west, south, east, north");
+  if (edges->size() != 4)
+    return refuse(key, fmt::format("{} numbers", edges->size()), "four: west, south, east, north");
   const double west = edges->at(0), south = edges->at(1), east = edges->at(2), north = edges->at(3);
   if (!(std::abs(south) <= 90 && std::abs(north) <= 90)) {
-    refuse(key, fmt::format("latitudes {} and {}", south, north), "-90 to 90 degrees; the order is west, south, east, north");
+    refuse(key, fmt::format("latitudes {} and {}", south, north),
+           "-90 to 90 degrees; the order is west, south, east, north");
   } else if (south >= north) {
     refuse(key, fmt::format("south {} not below north {}", south, north), "the order west, south, east, north");
   }
@@ -243,7 +259,8 @@ void JobReader::read_mask() {
   mask.values = toml_.numbers("input.mask.values").value_or(std::vector<double>{});
   const bool range = toml_.has("input.mask.min") || toml_.has("input.mask.max");
   if (range == toml_.has("input.mask.values")) {
-    refuse("input.mask", range ? "both values and min or max" : "no criterion", "exactly one kind: min and/or max, or values = [...]");
+    refuse("input.mask", range ? "both values and min or max" : "no criterion",
+           "exactly one kind: min and/or max, or values = [...]");
   }
   if (mask.min && mask.max && *mask.min > *mask.max) {
     refuse("input.mask.min", fmt::format("{} above max {}", *mask.min, *mask.max), "min not above max");
@@ -252,13 +269,18 @@ void JobReader::read_mask() {
 }
 
 void JobReader::read_values() {
-  if (toml_.is_number("input.missing_values")) job_.input.missing_values = {*toml_.number("input.missing_values")};
-  else job_.input.missing_values = toml_.numbers("input.missing_values").value_or(std::vector<double>{});
+  if (toml_.is_number("input.missing_values"))
+    job_.input.missing_values = {*toml_.number("input.missing_values")};
+  else
+    job_.input.missing_values = toml_.numbers("input.missing_values").value_or(std::vector<double>{});
   if (const auto range = toml_.numbers("input.valid_range")) {
-    if (range->size() != 2) refuse("input.valid_range", fmt::format("{} numbers", range->size()), "two: the smallest and the largest valid value");
+    if (range->size() != 2)
+      refuse("input.valid_range", fmt::format("{} numbers", range->size()),
+             "two: the smallest and the largest valid value");
     else if (!(range->front() < range->back())) {
       refuse("input.valid_range", fmt::format("{} to {}", range->front(), range->back()), "the smaller value first");
-    } else job_.input.valid_range = {range->front(), range->back()};
+    } else
+      job_.input.valid_range = {range->front(), range->back()};
   }
   job_.input.sites = existing_file("input.sites");
   job_.input.duplicates = toml_.choice("input.duplicates", choice_words("input.duplicates")).value_or("refuse");
@@ -267,17 +289,21 @@ void JobReader::read_values() {
 
 void JobReader::read_time() {
   if (!toml_.has("input.time")) return;
-  JobSpec::Input::Time time{toml_.text("input.time.unit"), toml_.text("input.time.calendar"), toml_.text("input.time.step")};
+  JobSpec::Input::Time time{toml_.text("input.time.unit"), toml_.text("input.time.calendar"),
+                            toml_.text("input.time.step")};
   if (time.unit && time.unit->find(" since ") == std::string::npos) {
     refuse("input.time.unit", fmt::format("\"{}\"", *time.unit), "a CF time unit such as \"days since 1981-01-01\"");
   }
   if (time.calendar && !parse_calendar(*time.calendar)) {
     std::vector<std::string> names;
-    for (int i = 0; i <= static_cast<int>(Calendar::day360); ++i) names.emplace_back(calendar_name(static_cast<Calendar>(i)));
-    refuse("input.time.calendar", fmt::format("\"{}\"", *time.calendar), join(names, " | ") + did_you_mean(*time.calendar, names));
+    for (int i = 0; i <= static_cast<int>(Calendar::day360); ++i)
+      names.emplace_back(calendar_name(static_cast<Calendar>(i)));
+    refuse("input.time.calendar", fmt::format("\"{}\"", *time.calendar),
+           join(names, " | ") + did_you_mean(*time.calendar, names));
   }
   if (time.step && !parse_duration(*time.step)) {
-    refuse("input.time.step", fmt::format("\"{}\"", *time.step), "an ISO 8601 duration such as \"P1M\", \"P1D\" or \"PT6H\"");
+    refuse("input.time.step", fmt::format("\"{}\"", *time.step),
+           "an ISO 8601 duration such as \"P1M\", \"P1D\" or \"PT6H\"");
   }
   job_.input.time = std::move(time);
 }
@@ -292,7 +318,8 @@ std::optional<StepsOrDuration> JobReader::steps_or_duration(const std::string& k
   const auto text = toml_.text(key);
   if (!text) return std::nullopt;
   if (parse_duration(*text)) return StepsOrDuration(*text);
-  refuse(key, fmt::format("\"{}\"", *text), "an ISO 8601 duration such as \"P5Y\" or \"P30D\", or a whole number of steps");
+  refuse(key, fmt::format("\"{}\"", *text),
+         "an ISO 8601 duration such as \"P5Y\" or \"P30D\", or a whole number of steps");
   return std::nullopt;
 }
 
@@ -344,11 +371,15 @@ void JobReader::read_trend() {
     if (tests->empty()) refuse("trend.tests", "an empty list", join(known, " | "));
     trend.tests.clear();
     for (const std::string& test : *tests) {
-      if (contains(trend.tests, test)) refuse("trend.tests", fmt::format("\"{}\" twice", test), "each test once");
-      else if (contains(known, test)) trend.tests.push_back(test);
+      if (contains(trend.tests, test))
+        refuse("trend.tests", fmt::format("\"{}\" twice", test), "each test once");
+      else if (contains(known, test))
+        trend.tests.push_back(test);
       else if (std::find(later.begin(), later.end(), test) != later.end()) {
-        toml_.problem("trend.tests", fmt::format("tests: \"{}\" is not available yet in this version; there are {}", test, join(known, " | ")));
-      } else refuse("trend.tests", fmt::format("\"{}\"", test), join(known, " | ") + did_you_mean(test, known));
+        toml_.problem("trend.tests", fmt::format("tests: \"{}\" is not available yet in this version; there are {}",
+                                                 test, join(known, " | ")));
+      } else
+        refuse("trend.tests", fmt::format("\"{}\"", test), join(known, " | ") + did_you_mean(test, known));
     }
   }
   number("trend.alpha", trend.alpha);
@@ -360,8 +391,9 @@ void JobReader::read_trend() {
 
 void JobReader::read_output() {
   JobSpec::Output& output = job_.output;
-  const auto words = [this](const std::string& key, const std::vector<std::string>& known, const std::vector<std::string>& other,
-                            std::string_view other_key, std::vector<std::string>& target) {
+  const auto words = [this](const std::string& key, const std::vector<std::string>& known,
+                            const std::vector<std::string>& other, std::string_view other_key,
+                            std::vector<std::string>& target) {
     const auto names = toml_.texts(key);
     if (!names) return;
     target.clear();
@@ -384,7 +416,8 @@ void JobReader::read_output() {
   }
   whole_number("output.deflate", output.deflate);
 
-  if (!toml_.has("output.file")) return toml_.problem("output.file", "output.file is missing: name the result, such as file = \"result.nc\"");
+  if (!toml_.has("output.file"))
+    return toml_.problem("output.file", "output.file is missing: name the result, such as file = \"result.nc\"");
   const auto file = toml_.text("output.file");
   if (!file) return;
   const std::string key = "output.file";
@@ -394,7 +427,8 @@ void JobReader::read_output() {
   std::string rest = *file;
   const std::size_t mark = rest.find(kVariableMark);
   if (mark != std::string::npos) rest.erase(mark, kVariableMark.size());
-  if (rest.find_first_of("{}") != std::string::npos) refuse(key, fmt::format("\"{}\"", *file), "no braces but one {variable}");
+  if (rest.find_first_of("{}") != std::string::npos)
+    refuse(key, fmt::format("\"{}\"", *file), "no braces but one {variable}");
   if (job_.input.variables.size() > 1 && mark == std::string::npos) {
     refuse(key, fmt::format("\"{}\"", *file), "{variable} in the name, because several variables are analysed");
   }
@@ -409,7 +443,8 @@ void JobReader::check_output_is_no_input() {
   for (const std::string& variable : job_.input.variables) {
     std::string path = job_.output.file;
     if (path.empty()) return;
-    if (const std::size_t mark = path.find(kVariableMark); mark != std::string::npos) path.replace(mark, kVariableMark.size(), variable);
+    if (const std::size_t mark = path.find(kVariableMark); mark != std::string::npos)
+      path.replace(mark, kVariableMark.size(), variable);
     const std::string stem = path.ends_with(".nc") ? path.substr(0, path.size() - 3) : path;
     for (const std::string& result : {path, stem + "_cubes.nc", stem + ".csv"}) {
       for (const std::string& input : inputs) {
@@ -441,13 +476,21 @@ std::string base_name(const std::string& path) { return fs::path(path).filename(
 class TomlLines {
  public:
   template <class Value>
-  void add(std::string_view key, const Value& value) { line(key, value_text(value)); }
+  void add(std::string_view key, const Value& value) {
+    line(key, value_text(value));
+  }
   template <class Value>
-  void add(std::string_view key, const std::optional<Value>& value) { if (value) add(key, *value); }
+  void add(std::string_view key, const std::optional<Value>& value) {
+    if (value) add(key, *value);
+  }
   template <class Value>
-  void add_list(std::string_view key, const Value& values) { line(key, list_text(values)); }
+  void add_list(std::string_view key, const Value& values) {
+    line(key, list_text(values));
+  }
   template <class Enum>
-  void add_choice(std::string_view key, Enum value) { line(key, toml_text(choice_word(key, value))); }
+  void add_choice(std::string_view key, Enum value) {
+    line(key, toml_text(choice_word(key, value)));
+  }
   void line(std::string_view key, const std::string& value) {
     const std::size_t dot = key.find('.');
     const std::string table(key.substr(0, dot == std::string_view::npos ? 0 : dot));
@@ -465,8 +508,10 @@ void write_input(const JobSpec::Input& input, TomlLines& lines) {
   std::vector<std::string> names;
   for (const std::string& file : input.files) names.push_back(base_name(file));
   lines.add_list("input.files", names);
-  if (input.variables.size() == 1) lines.add("input.variable", input.variables.front());
-  else lines.add_list("input.variable", input.variables);
+  if (input.variables.size() == 1)
+    lines.add("input.variable", input.variables.front());
+  else
+    lines.add_list("input.variable", input.variables);
   for (const auto& [dimension, value] : input.select) lines.add("input.select." + toml_text(dimension), value);
   if (input.period) lines.add_list("input.period", std::array{input.period->first, input.period->second});
   if (input.box) lines.add_list("input.box", *input.box);
@@ -500,8 +545,10 @@ void write_prepare_and_memory(const JobSpec& job, TomlLines& lines) {
   lines.add("memory.max_lag", job.memory.max_lag.value_or(StepsOrDuration("auto")));
   lines.add("memory.confidence", job.memory.confidence);
   lines.add_choice("memory.limits", job.memory.limits);
-  if (job.memory.order == OrderRule::fixed) lines.add("memory.order", job.memory.fixed_order);
-  else lines.add_choice("memory.order", job.memory.order);
+  if (job.memory.order == OrderRule::fixed)
+    lines.add("memory.order", job.memory.fixed_order);
+  else
+    lines.add_choice("memory.order", job.memory.order);
   lines.add("memory.max_order", job.memory.max_order);
 }
 

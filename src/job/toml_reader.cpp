@@ -31,13 +31,20 @@ struct Override {
 
 std::string type_words(const toml::node& node) {
   switch (node.type()) {
-    case toml::node_type::string: return fmt::format("the text \"{}\"", node.as_string()->get());
-    case toml::node_type::integer: return fmt::format("the whole number {}", node.as_integer()->get());
-    case toml::node_type::floating_point: return fmt::format("the number {}", node.as_floating_point()->get());
-    case toml::node_type::boolean: return node.as_boolean()->get() ? "true" : "false";
-    case toml::node_type::table: return "a table";
-    case toml::node_type::array: return "a list";
-    default: return "a date or time";
+    case toml::node_type::string:
+      return fmt::format("the text \"{}\"", node.as_string()->get());
+    case toml::node_type::integer:
+      return fmt::format("the whole number {}", node.as_integer()->get());
+    case toml::node_type::floating_point:
+      return fmt::format("the number {}", node.as_floating_point()->get());
+    case toml::node_type::boolean:
+      return node.as_boolean()->get() ? "true" : "false";
+    case toml::node_type::table:
+      return "a table";
+    case toml::node_type::array:
+      return "a list";
+    default:
+      return "a date or time";
   }
 }
 
@@ -45,9 +52,12 @@ std::string type_words(const toml::node& node) {
 std::optional<std::string> as_text(const toml::node& node) {
   if (const auto* text = node.as_string()) return text->get();
   std::ostringstream out;
-  if (const auto* date = node.as_date()) out << date->get();
-  else if (const auto* date_time = node.as_date_time()) out << date_time->get();
-  else return std::nullopt;
+  if (const auto* date = node.as_date())
+    out << date->get();
+  else if (const auto* date_time = node.as_date_time())
+    out << date_time->get();
+  else
+    return std::nullopt;
   return out.str();
 }
 
@@ -84,7 +94,9 @@ std::string parent_of(const std::string& key) {
 
 std::string last_part(const std::string& key) { return key.substr(key.rfind('.') + 1); }
 
-std::string joined(const std::string& table, const std::string& name) { return table.empty() ? name : table + "." + name; }
+std::string joined(const std::string& table, const std::string& name) {
+  return table.empty() ? name : table + "." + name;
+}
 
 /// "patch[2].ar" -> "patch[].ar", as keys are written in lists of known keys.
 std::string without_indices(const std::string& key) {
@@ -134,7 +146,9 @@ struct TomlReader::Impl {
   /// 1 + number of the override that set this key or a table around it; 0 if the file did.
   [[nodiscard]] std::size_t override_rank(const std::string& key) const {
     for (std::size_t i = overrides.size(); i-- > 0;) {
-      if (key == overrides[i].key || starts_with(key, overrides[i].key + ".") || starts_with(key, overrides[i].key + "[")) return i + 1;
+      if (key == overrides[i].key || starts_with(key, overrides[i].key + ".") ||
+          starts_with(key, overrides[i].key + "["))
+        return i + 1;
     }
     return 0;
   }
@@ -163,7 +177,8 @@ struct TomlReader::Impl {
   void apply(const std::string& option);
   bool insert(const std::string& key, const toml::node& value);
   void refuse_unknown(const toml::table& table, const std::string& path, const std::vector<std::string>& known);
-  void check_node(const std::string& path, const toml::key& key, const toml::node& node, const std::vector<std::string>& known);
+  void check_node(const std::string& path, const toml::key& key, const toml::node& node,
+                  const std::vector<std::string>& known);
   [[nodiscard]] std::string unknown_words(const std::string& path, const std::string& name,
                                           const std::vector<std::string>& known) const;
 };
@@ -188,7 +203,8 @@ void TomlReader::Impl::apply(const std::string& option) {
   const std::size_t equals = option.find('=');
   const std::string key(trim(option.substr(0, equals)));
   if (equals == std::string::npos || key.empty()) {
-    problems.push_back({overrides.size() + 1, {}, fmt::format("--set {}: expected KEY=VALUE, such as field.rate=0.05", option)});
+    problems.push_back(
+        {overrides.size() + 1, {}, fmt::format("--set {}: expected KEY=VALUE, such as field.rate=0.05", option)});
     return;
   }
   overrides.push_back({key, option.substr(equals + 1)});
@@ -201,7 +217,8 @@ TomlReader::TomlReader(std::unique_ptr<Impl> impl) : impl_(std::move(impl)) {}
 TomlReader::~TomlReader() = default;
 TomlReader::TomlReader(TomlReader&&) noexcept = default;
 
-TomlReader TomlReader::from_text(const std::string& text, const std::string& name, const std::vector<std::string>& overrides) {
+TomlReader TomlReader::from_text(const std::string& text, const std::string& name,
+                                 const std::vector<std::string>& overrides) {
   auto impl = std::make_unique<Impl>();
   impl->file = name;
   impl->source = text;
@@ -214,7 +231,8 @@ TomlReader TomlReader::from_file(const std::string& path, const std::vector<std:
   std::error_code ignored;
   std::ifstream file(path, std::ios::binary);
   if (!file || std::filesystem::is_directory(path, ignored)) {
-    throw Error(ErrorKind::job, "this file cannot be read", path, "give the path of a TOML file that exists and that you may read");
+    throw Error(ErrorKind::job, "this file cannot be read", path,
+                "give the path of a TOML file that exists and that you may read");
   }
   const std::string text{std::istreambuf_iterator<char>(file), std::istreambuf_iterator<char>()};
   TomlReader reader = from_text(text, path, overrides);
@@ -291,8 +309,10 @@ std::optional<std::vector<std::string>> TomlReader::texts(const std::string& key
   std::vector<std::string> values;
   bool good = true;
   for (const toml::node& element : *node->as_array()) {
-    if (auto value = as_text(element)) values.push_back(std::move(*value));
-    else good = false, impl_->wrong_type(key, element, "only texts in this list");
+    if (auto value = as_text(element))
+      values.push_back(std::move(*value));
+    else
+      good = false, impl_->wrong_type(key, element, "only texts in this list");
   }
   return good ? std::optional(std::move(values)) : std::nullopt;
 }
@@ -307,8 +327,10 @@ std::optional<std::vector<double>> TomlReader::numbers(const std::string& key) {
   std::vector<double> values;
   bool good = true;
   for (const toml::node& element : *node->as_array()) {
-    if (const auto value = as_number(element)) values.push_back(*value);
-    else good = false, impl_->wrong_type(key, element, "only numbers in this list");
+    if (const auto value = as_number(element))
+      values.push_back(*value);
+    else
+      good = false, impl_->wrong_type(key, element, "only numbers in this list");
   }
   return good ? std::optional(std::move(values)) : std::nullopt;
 }
@@ -346,9 +368,11 @@ std::string TomlReader::Impl::unknown_words(const std::string& path, const std::
     if (last_part(key) == name && parent_of(key) != table) elsewhere = elsewhere.value_or(key);
   }
   const std::vector<std::string> names(siblings.begin(), siblings.end());
-  std::string text = path.empty() ? fmt::format("unknown key '{}'", name) : fmt::format("unknown key '{}' in [{}]", name, path);
+  std::string text =
+      path.empty() ? fmt::format("unknown key '{}'", name) : fmt::format("unknown key '{}' in [{}]", name, path);
   if (const auto near = nearest_name(name, names)) return text + fmt::format(", did you mean '{}'?", *near);
-  if (elsewhere) return text + fmt::format("; there is a '{}', which belongs in [{}]", *elsewhere, parent_of(*elsewhere));
+  if (elsewhere)
+    return text + fmt::format("; there is a '{}', which belongs in [{}]", *elsewhere, parent_of(*elsewhere));
   return text + fmt::format("; known here: {}", join(names, ", "));
 }
 
@@ -371,14 +395,19 @@ void TomlReader::Impl::check_node(const std::string& path, const toml::key& key,
     }
     return;
   }
-  if (!exact) wrong_type(full, node, tables ? fmt::format("tables that begin with [[{}]]", name) : fmt::format("a table [{}]", name));
+  if (!exact)
+    wrong_type(full, node,
+               tables ? fmt::format("tables that begin with [[{}]]", name) : fmt::format("a table [{}]", name));
 }
 
-void TomlReader::Impl::refuse_unknown(const toml::table& table, const std::string& path, const std::vector<std::string>& known) {
+void TomlReader::Impl::refuse_unknown(const toml::table& table, const std::string& path,
+                                      const std::vector<std::string>& known) {
   for (const auto& [key, node] : table) check_node(path, key, node, known);
 }
 
-void TomlReader::refuse_unknown(const std::vector<std::string>& known) { impl_->refuse_unknown(impl_->root, "", known); }
+void TomlReader::refuse_unknown(const std::vector<std::string>& known) {
+  impl_->refuse_unknown(impl_->root, "", known);
+}
 
 void TomlReader::finish() const {
   if (impl_->problems.empty()) return;
@@ -403,11 +432,16 @@ std::string toml_text(const std::string& text) {
   std::string out = "\"";
   for (const char c : text) {
     const auto code = static_cast<unsigned char>(c);
-    if (c == '"' || c == '\\') out += fmt::format("\\{}", c);
-    else if (c == '\n') out += "\\n";
-    else if (c == '\t') out += "\\t";
-    else if (code < 0x20 || code == 0x7F) out += fmt::format("\\u{:04X}", static_cast<unsigned>(code));
-    else out += c;
+    if (c == '"' || c == '\\')
+      out += fmt::format("\\{}", c);
+    else if (c == '\n')
+      out += "\\n";
+    else if (c == '\t')
+      out += "\\t";
+    else if (code < 0x20 || code == 0x7F)
+      out += fmt::format("\\u{:04X}", static_cast<unsigned>(code));
+    else
+      out += c;
   }
   return out + '"';
 }

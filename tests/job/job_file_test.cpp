@@ -23,7 +23,8 @@ class JobFile : public testing::Test {
     folder_ = fs::path(testing::TempDir()) / "lagscape_job_file";
     fs::remove_all(folder_);
     fs::create_directories(folder_ / "data");
-    for (const char* name : {"data/wet_1990.nc", "data/wet_1980.nc", "data/land.nc", "data/sites.csv"}) std::ofstream(folder_ / name) << "x";
+    for (const char* name : {"data/wet_1990.nc", "data/wet_1980.nc", "data/land.nc", "data/sites.csv"})
+      std::ofstream(folder_ / name) << "x";
   }
   void TearDown() override { fs::remove_all(folder_); }
 
@@ -31,7 +32,8 @@ class JobFile : public testing::Test {
     return parse_job(text, "job.toml", folder_.string(), overrides);
   }
   /// A job that is right, with further keys of [input], of [output], and further tables.
-  static std::string job(const std::string& input, const std::string& more = {}, const std::string& output = "file = 'out.nc'\n") {
+  static std::string job(const std::string& input, const std::string& more = {},
+                         const std::string& output = "file = 'out.nc'\n") {
     return "[input]\nfiles = ['data/wet_*.nc']\nvariable = 'wet'\n" + input + "\n[output]\n" + output + more;
   }
   /// What is said about a job that is wrong: the lines under the heading, without the name of the file.
@@ -150,18 +152,22 @@ TEST_F(JobFile, EqualWorkSpelledDifferentlyGivesEqualText) {
 }
 
 TEST_F(JobFile, AllProblemsOfAJobAreToldAtOnce) {
-  EXPECT_EQ(problems("title = 3\n[input]\nfiles = 'none_*.nc'\n[prepare]\nmin_shar = 0.5\nseason = 'calender'\n"
-                     "[memory]\nconfidence = 95\n[output]\nfile = 'a.nc'\nmaps = ['trend_slop']\n",
-                     {"field.rate=5"}),
-            "8 problems in job.toml\n"
-            "  job.toml:1:9: title: found the whole number 3, expected a text\n"
-            "  job.toml:2:1: input.variable is missing: name the variable to analyse; 'lagscape survey FILE' lists them\n"
-            "  job.toml:3:9: files: found \"none_*.nc\", expected files; nothing matches " + path("none_*.nc") + "\n"
-            "  job.toml:5:1: unknown key 'min_shar' in [prepare], did you mean 'min_share'?\n"
-            "  job.toml:6:10: season: found \"calender\", expected auto | none | calendar | harmonics, did you mean 'calendar'?\n"
-            "  job.toml:8:14: confidence: found 95, expected above 0.5, below 1\n"
-            "  job.toml:11:8: maps: unknown name 'trend_slop', did you mean 'trend_slope'?\n"
-            "  --set field.rate: rate: found 5, expected above 0, below 1");
+  EXPECT_EQ(
+      problems("title = 3\n[input]\nfiles = 'none_*.nc'\n[prepare]\nmin_shar = 0.5\nseason = 'calender'\n"
+               "[memory]\nconfidence = 95\n[output]\nfile = 'a.nc'\nmaps = ['trend_slop']\n",
+               {"field.rate=5"}),
+      "8 problems in job.toml\n"
+      "  job.toml:1:9: title: found the whole number 3, expected a text\n"
+      "  job.toml:2:1: input.variable is missing: name the variable to analyse; 'lagscape survey FILE' lists them\n"
+      "  job.toml:3:9: files: found \"none_*.nc\", expected files; nothing matches " +
+          path("none_*.nc") +
+          "\n"
+          "  job.toml:5:1: unknown key 'min_shar' in [prepare], did you mean 'min_share'?\n"
+          "  job.toml:6:10: season: found \"calender\", expected auto | none | calendar | harmonics, did you mean "
+          "'calendar'?\n"
+          "  job.toml:8:14: confidence: found 95, expected above 0.5, below 1\n"
+          "  job.toml:11:8: maps: unknown name 'trend_slop', did you mean 'trend_slope'?\n"
+          "  --set field.rate: rate: found 5, expected above 0, below 1");
 }
 
 /// One wrong line each, with a piece of what must be said about it.
@@ -173,7 +179,8 @@ class WrongJob : public JobFile, public testing::WithParamInterface<Wrong> {};
 
 TEST_P(WrongJob, IsRefusedInPlainWords) {
   const Wrong& wrong = GetParam();
-  const std::string said = problems(job(wrong.input, wrong.more, *wrong.output != '\0' ? wrong.output : "file = 'out.nc'\n"));
+  const std::string said =
+      problems(job(wrong.input, wrong.more, *wrong.output != '\0' ? wrong.output : "file = 'out.nc'\n"));
   EXPECT_NE(said.find(wrong.said), std::string::npos) << said;
   EXPECT_EQ(said.substr(0, 21), "1 problem in job.toml") << said;
 }
@@ -190,11 +197,14 @@ INSTANTIATE_TEST_SUITE_P(
         Wrong{"BoxWidth", "box = [10, 0, 10, 35]", "", "", "more than 0"},
         Wrong{"BoxCount", "box = [10, 0, 10]", "", "", "four: west, south, east, north"},
         Wrong{"MaskWithoutCriterion", "mask = { file = 'data/land.nc', variable = 'l' }", "", "", "exactly one kind"},
-        Wrong{"MaskWithTwoCriteria", "mask = { file = 'data/land.nc', variable = 'l', min = 1, values = [1] }", "", "", "exactly one kind"},
+        Wrong{"MaskWithTwoCriteria", "mask = { file = 'data/land.nc', variable = 'l', min = 1, values = [1] }", "", "",
+              "exactly one kind"},
         Wrong{"MaskFile", "mask = { file = 'data/sea.nc', variable = 'l', min = 1 }", "", "", "a file that exists"},
         Wrong{"MaskVariable", "mask = { file = 'data/land.nc', min = 1 }", "", "", "input.mask.variable is missing"},
-        Wrong{"MaskOrder", "mask = { file = 'data/land.nc', variable = 'l', min = 2, max = 1 }", "", "", "min not above max"},
-        Wrong{"MaskKey", "mask = { file = 'data/land.nc', variable = 'l', minn = 2, max = 1 }", "", "", "did you mean 'min'"},
+        Wrong{"MaskOrder", "mask = { file = 'data/land.nc', variable = 'l', min = 2, max = 1 }", "", "",
+              "min not above max"},
+        Wrong{"MaskKey", "mask = { file = 'data/land.nc', variable = 'l', minn = 2, max = 1 }", "", "",
+              "did you mean 'min'"},
         Wrong{"ValidRange", "valid_range = [1, 0]", "", "", "the smaller value first"},
         Wrong{"ValidRangeCount", "valid_range = [1]", "", "", "the smallest and the largest"},
         Wrong{"Sites", "sites = 'nowhere.csv'", "", "", "a file that exists"},
@@ -266,7 +276,8 @@ TEST_F(JobFile, FoldersAndFilesMayHaveGlobCharactersInTheirNames) {
 
 TEST_F(JobFile, ReadsFilesRelativeToTheirOwnFolder) {
   fs::create_directories(folder_ / "jobs");
-  std::ofstream(folder_ / "jobs" / "j.toml") << "[input]\nfiles = '../data/wet_*.nc'\nvariable = 'wet'\n[output]\nfile = '../r/o.nc'\n";
+  std::ofstream(folder_ / "jobs" / "j.toml")
+      << "[input]\nfiles = '../data/wet_*.nc'\nvariable = 'wet'\n[output]\nfile = '../r/o.nc'\n";
   const JobSpec spec = read_job(path("jobs/j.toml"), {"trend.alpha=0.01"});
   EXPECT_EQ(spec.input.files.size(), 2U);
   EXPECT_EQ(spec.output.file, path("r/o.nc"));

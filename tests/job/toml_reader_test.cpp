@@ -126,7 +126,8 @@ TEST(TomlReader, AProblemOfAnAbsentKeyIsPlacedAtItsTable) {
   auto toml = reader("x = 1\n\n[input]\nvariable = 'v'\n");
   toml.problem("input.files", "input.files is missing");
   toml.problem("output.file", "output.file is missing");
-  EXPECT_EQ(problems(toml), "2 problems in a.toml\n  a.toml:1:1: output.file is missing\n  a.toml:3:1: input.files is missing");
+  EXPECT_EQ(problems(toml),
+            "2 problems in a.toml\n  a.toml:1:1: output.file is missing\n  a.toml:3:1: input.files is missing");
 }
 
 TEST(TomlReader, TomlDatesStandForTheirIsoText) {

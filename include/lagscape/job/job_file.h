@@ -15,9 +15,9 @@ namespace lagscape {
 [[nodiscard]] JobSpec parse_job(const std::string& text, const std::string& name, const std::string& folder,
                                 const std::vector<std::string>& overrides);
 
-/// Every key with its effective value as TOML, one canonical spelling: equal work gives equal text. Stored in results, so it
-/// holds no path of a user or machine: input files, mask and sites are given by their base names, and output.file, which
-/// changes nothing in a result, is left out.
+/// Every key with its effective value as TOML, one canonical spelling: equal work gives equal text. Stored in results,
+/// so it holds no path of a user or machine: input files, mask and sites are given by their base names, and
+/// output.file, which changes nothing in a result, is left out.
 [[nodiscard]] std::string job_text(const JobSpec& job);
 
 }  // namespace lagscape

@@ -24,7 +24,7 @@ enum class RatePer { year, decade };
 struct JobSpec {
   std::string title;
   struct Input {
-    std::vector<std::string> files;      ///< resolved paths, globs expanded, sorted
+    std::vector<std::string> files;  ///< resolved paths, globs expanded, sorted
     std::vector<std::string> variables;
     std::vector<std::pair<std::string, double>> select;
     std::optional<std::pair<std::string, std::string>> period;
@@ -72,14 +72,14 @@ struct JobSpec {
     double rate = 0.10;
   } field;
   struct Output {
-    std::string file;                                 ///< resolved path; may contain {variable}
+    std::string file;  ///< resolved path; may contain {variable}
     std::vector<std::string> maps = {"standard"};
     std::vector<std::string> cubes;
     int deflate = 1;
   } output;
 
-  std::string text;       ///< the job as read (file text and --set lines)
-  std::string path;       ///< job file, for messages
+  std::string text;  ///< the job as read (file text and --set lines)
+  std::string path;  ///< job file, for messages
 };
 
 }  // namespace lagscape

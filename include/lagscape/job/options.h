@@ -15,13 +15,13 @@ struct NumberBounds {
 
 /// One key of the job file: the single place from which validation, `explain`, `plan` and help follow.
 struct JobOption {
-  std::string_view key;            ///< "prepare.min_share"
-  std::string_view type;           ///< "number", "text", "list of texts", "duration or whole number", ...
-  std::string_view default_text;   ///< "0.8"; "" when the key is required or absent by default
-  std::string_view choices;        ///< "auto | none | calendar | harmonics"; "" when the value is free
-  NumberBounds bounds;             ///< used when low < high
-  std::string_view unit;           ///< "", "degrees", "steps" ...
-  std::string_view help;           ///< one or two sentences
+  std::string_view key;           ///< "prepare.min_share"
+  std::string_view type;          ///< "number", "text", "list of texts", "duration or whole number", ...
+  std::string_view default_text;  ///< "0.8"; "" when the key is required or absent by default
+  std::string_view choices;       ///< "auto | none | calendar | harmonics"; "" when the value is free
+  NumberBounds bounds;            ///< used when low < high
+  std::string_view unit;          ///< "", "degrees", "steps" ...
+  std::string_view help;          ///< one or two sentences
 };
 [[nodiscard]] std::span<const JobOption> job_options();
 /// The option of a key, or nullptr.

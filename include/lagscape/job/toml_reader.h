@@ -13,9 +13,11 @@ namespace lagscape {
 /// Keys are dotted paths ("prepare.min_share"); array-of-tables elements are reached as "patch[0].ar".
 class TomlReader {
  public:
-  /// Throws Error{job} for a syntax error or an unreadable file. overrides: "key.path=VALUE", VALUE as TOML, or bare text.
+  /// Throws Error{job} for a syntax error or an unreadable file. overrides: "key.path=VALUE", VALUE as TOML, or bare
+  /// text.
   static TomlReader from_file(const std::string& path, const std::vector<std::string>& overrides = {});
-  static TomlReader from_text(const std::string& text, const std::string& name, const std::vector<std::string>& overrides = {});
+  static TomlReader from_text(const std::string& text, const std::string& name,
+                              const std::vector<std::string>& overrides = {});
   ~TomlReader();
   TomlReader(TomlReader&&) noexcept;
 
@@ -25,13 +27,14 @@ class TomlReader {
   [[nodiscard]] bool is_text(const std::string& key) const;
   [[nodiscard]] bool is_table(const std::string& key) const;
   [[nodiscard]] std::size_t array_size(const std::string& key) const;  ///< 0 if absent or not an array
-  std::optional<std::string> text(const std::string& key);              ///< TOML dates count as their ISO text
-  std::optional<double> number(const std::string& key);                 ///< finite; integers count as numbers
+  std::optional<std::string> text(const std::string& key);             ///< TOML dates count as their ISO text
+  std::optional<double> number(const std::string& key);                ///< finite; integers count as numbers
   std::optional<std::int64_t> integer(const std::string& key);
   std::optional<bool> boolean(const std::string& key);
-  std::optional<std::vector<std::string>> texts(const std::string& key);    ///< a single text counts as a list of one
-  std::optional<std::vector<double>> numbers(const std::string& key);       ///< inf is accepted (open ranges), nan is not
-  std::optional<std::string> choice(const std::string& key, const std::vector<std::string>& allowed);  ///< with did-you-mean
+  std::optional<std::vector<std::string>> texts(const std::string& key);  ///< a single text counts as a list of one
+  std::optional<std::vector<double>> numbers(const std::string& key);     ///< inf is accepted (open ranges), nan is not
+  std::optional<std::string> choice(const std::string& key,
+                                    const std::vector<std::string>& allowed);  ///< with did-you-mean
   [[nodiscard]] std::vector<std::string> keys(const std::string& table) const;
 
   /// Notes a problem at the key's place (or at its table's when the key is absent).
