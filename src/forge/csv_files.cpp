@@ -1,0 +1,59 @@
+#include <fmt/format.h>
+
+#include <cmath>
+#include <fstream>
+
+#include "forge/data_files.h"
+#include "forge/generator.h"
+#include "lagscape/base/error.h"
+
+namespace lagscape {
+namespace {
+
+void close(std::ofstream& file, const std::string& path) {
+  file.close();
+  if (!file) {
+    throw Error(ErrorKind::output, "the file could not be written", "file: " + path,
+                "check that the disk has room and the folder may be written to");
+  }
+}
+
+void write_sites(const Geometry& geometry, const std::string& path) {
+  std::ofstream file(path, std::ios::binary);
+  file << (geometry.altitude.empty() ? "name,lon,lat\n" : "name,lon,lat,altitude\n");
+  for (std::size_t i = 0; i < geometry.cols; ++i) {
+    file << fmt::format("{},{},{}", geometry.site_names[i], geometry.lon[i], geometry.lat[i]);
+    file << (geometry.altitude.empty() ? "\n" : fmt::format(",{}\n", geometry.altitude[i]));
+  }
+  close(file, path);
+}
+
+}  // namespace
+
+MissingCounts write_csv(const Recipe& recipe, const PartFiles& files) {
+  const Geometry& geometry = recipe.geometry;
+  const ForgedVariable& variable = recipe.variables.front();
+  Generator generator(recipe, 0, 0, geometry.cells());
+  std::vector<double> values(geometry.cells());
+  for (const TimePiece& piece : time_pieces(recipe)) {
+    const std::string path = files.part(piece.stem + ".csv");
+    std::ofstream file(path, std::ios::binary);
+    file << fmt::format("# unit: {}\ndate,{}\n", variable.units, fmt::join(geometry.site_names, ","));
+    for (std::size_t t = piece.first; t < piece.first + piece.steps; ++t) {
+      generator.next(values);
+      file << recipe.axis.label(t);
+      for (const double value : values) {
+        if (std::isnan(value))
+          file << ',';
+        else
+          file << fmt::format(",{:.{}f}", stored_value(variable, value), recipe.output.decimals);
+      }
+      file << '\n';
+    }
+    close(file, path);
+  }
+  write_sites(geometry, files.part(recipe.output.sites_file));
+  return {generator.missing()};
+}
+
+}  // namespace lagscape
