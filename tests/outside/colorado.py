@@ -26,7 +26,8 @@ max_lag = {MAX_LAG}
 [output]
 file = "result.nc"
 maps = ["all"]
-cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count", "ar_coefficients"]
+cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count",
+         "ar_coefficients"]
 """
 
 
@@ -41,7 +42,7 @@ def main(program):
         folder = pathlib.Path(where)
         for part, (begin, end) in enumerate(((600, len(rows)), (0, 600))):  # two files, the later years first
             with open(folder / f"tmin_{part}.csv", "w") as file:
-                print("month", *names, sep=",", file=file)
+                print("date", *names, sep=",", file=file)
                 for row in rows[begin:end]:
                     values = ("" if row[name] == "NA" else row[name] for name in names)
                     print(f"{int(row['year']):04d}-{int(row['month']):02d}-01", *values, sep=",", file=file)

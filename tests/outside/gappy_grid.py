@@ -25,7 +25,8 @@ max_lag = 36
 [output]
 file = "maps.nc"
 maps = ["all"]
-cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count", "ar_coefficients"]
+cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count",
+         "ar_coefficients"]
 """
 KINDS = [[0.0], [0.3], [0.6], [0.9], [0.5, 0.3], [1.2, -0.5], [-0.4], [0.3, 0.2, 0.2], [0.2, 0, 0, 0.3, 0.25], [0.97]]
 
@@ -62,7 +63,8 @@ def make_cells():
     for cell in range(len(cells)):
         x = autoregressive(rng, KINDS[cell % len(KINDS)], STEPS)
         season = rng.uniform(0, 6) * np.cos(2 * np.pi * (t - rng.uniform(0, 12)) / 12)
-        cells[cell] = np.where(holes(rng, cell), x + season + rng.choice([0, 0, 0.03, -0.05]) * t / 12 + rng.uniform(-5, 20), np.nan)
+        slope, level = rng.choice([0, 0, 0.03, -0.05]) / 12, rng.uniform(-5, 20)
+        cells[cell] = np.where(holes(rng, cell), x + season + slope * t + level, np.nan)
     cells[3] = np.nan                                  # a lake
     cells[11] = np.where(np.isnan(cells[11]), np.nan, 4.5)  # constant
     cells[17, 25:] = np.nan                            # 25 values
@@ -87,14 +89,17 @@ def write(path, cells):
     with netCDF4.Dataset(path, "w") as data:
         for name, size in (("time", None), ("lat", ROWS), ("lon", COLS)):
             data.createDimension(name, size)
-        for name, units, values in (("lat", "degrees_north", 52 - 0.5 * np.arange(ROWS)), ("lon", "degrees_east", -4 + 0.5 * np.arange(COLS))):
+        for name, units, values in (("lat", "degrees_north", 52 - 0.5 * np.arange(ROWS)),
+                                    ("lon", "degrees_east", -4 + 0.5 * np.arange(COLS))):
             data.createVariable(name, "f8", name).setncatts({"units": units})
             data[name][:] = values
         days = [int((np.datetime64("1961-01", "M") + int(t)).astype("datetime64[D]").astype(int)) + 14.5 for t in present]
         data.createVariable("time", "f8", "time").setncatts({"units": "days since 1970-01-01", "calendar": "standard"})
         data["time"][:] = days
-        warmth = data.createVariable("warmth", "i2", ("time", "lat", "lon"), fill_value=MISSING, zlib=True, chunksizes=(120, ROWS, COLS))
-        warmth.setncatts({"scale_factor": SCALE, "add_offset": OFFSET, "missing_value": np.array(HOLES, "i2"), "units": "degC"})
+        warmth = data.createVariable("warmth", "i2", ("time", "lat", "lon"), fill_value=MISSING, zlib=True,
+                                     chunksizes=(120, ROWS, COLS))
+        warmth.setncatts({"scale_factor": SCALE, "add_offset": OFFSET, "missing_value": np.array(HOLES, "i2"),
+                          "units": "degC"})
         warmth.set_auto_maskandscale(False)
         warmth[:] = raw[:, present].T.reshape(len(present), ROWS, COLS).astype("i2")
 
@@ -126,7 +131,8 @@ def main(program):
         found = check.Comparison(labels, scale=1.0)
         found.all_maps(expected, check.read(folder / "maps.nc", check.maps_in(folder / "maps.nc")))
         units = check.read(folder / "maps.nc", ["mean", "trend_slope", "residual_sd", "decorrelation_time"])
-        for variable, unit in (("mean", "degC"), ("trend_slope", "K year-1"), ("residual_sd", "K"), ("decorrelation_time", "month")):
+        for variable, unit in (("mean", "degC"), ("trend_slope", "K year-1"), ("residual_sd", "K"),
+                               ("decorrelation_time", "month")):
             if units[variable][1] != unit:
                 found.problems.append(f"{variable}: unit '{units[variable][1]}', expected '{unit}'")
         found.finish()

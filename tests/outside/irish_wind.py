@@ -28,7 +28,8 @@ control = "by"
 [output]
 file = "result.nc"
 maps = ["all"]
-cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count", "ar_coefficients"]
+cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count",
+         "ar_coefficients"]
 """
 
 
