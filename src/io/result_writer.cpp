@@ -6,6 +6,7 @@
 #include <filesystem>
 #include <utility>
 
+#include "io/result_writer_axes.h"
 #include "io/result_writer_csv.h"
 #include "io/result_writer_netcdf.h"
 #include "io/result_writer_parts.h"
@@ -61,10 +62,15 @@ void require_sound(const MapSet& set) {
     if (set.layers(map) == 0) bug("a cube without layers", "map: " + map.name);
 }
 
+MapSet with_clean_axes(MapSet set) {
+  for (SpaceAxis* axis : {&set.geometry.y, &set.geometry.x}) axis->values = without_float_noise(axis->values);
+  return set;
+}
+
 class Result final : public MapSink {
  public:
   Result(const std::string& path, const MapSet& set, bool replace)
-      : set_(set),
+      : set_(with_clean_axes(set)),
         replace_(replace),
         members_(members_of(path, set)),
         folder_(std::filesystem::path(path).parent_path()),

@@ -1,5 +1,6 @@
 #include "io/result_writer_axes.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <array>
 #include <cmath>
@@ -7,6 +8,7 @@
 #include <string_view>
 
 #include "io/nc_handle.h"
+#include "lagscape/base/text.h"
 
 namespace lagscape {
 namespace {
@@ -125,11 +127,32 @@ Period covered_period(const TimeAxis& axis) {
   return {start(first, 0), start(last, step.kind == StepKind::years ? 12 * step.count : step.count)};
 }
 
+std::vector<double> without_float_noise(std::span<const double> centres) {
+  std::vector<double> out(centres.begin(), centres.end());
+  if (out.size() < 3 || out.front() == out.back()) return out;
+  const auto rounded = [](double value) { return static_cast<double>(static_cast<float>(value)); };
+  const bool floats = std::all_of(out.begin(), out.end(), [&](double value) { return value == rounded(value); });
+  if (!floats && evenly_spaced(centres)) return out;
+  // The shortest decimal that reads back as the same float is what was meant: 59.95, not 59.95000076.
+  const auto meant = [&](double value) {
+    return floats ? to_number(fmt::format("{}", static_cast<float>(value))).value_or(value) : value;
+  };
+  const double first = meant(out.front()), last = meant(out.back());
+  const double step = (last - first) / static_cast<double>(out.size() - 1);
+  const double noise = 1.2e-7 * std::max(std::abs(first), std::abs(last));  // one unit in the last place of float32
+  for (std::size_t i = 0; i < out.size(); ++i) {
+    const double even = first + static_cast<double>(i) * step;
+    if (std::abs(out[i] - even) > noise) return {centres.begin(), centres.end()};
+    out[i] = even;
+  }
+  return out;
+}
+
 bool evenly_spaced(std::span<const double> centres) {
   if (centres.size() < 3) return true;
   const double step = (centres.back() - centres.front()) / static_cast<double>(centres.size() - 1);
   for (std::size_t i = 0; i < centres.size(); ++i)
-    if (std::abs(centres[i] - (centres.front() + static_cast<double>(i) * step)) > 0.01 * std::abs(step)) return false;
+    if (std::abs(centres[i] - (centres.front() + static_cast<double>(i) * step)) > 1e-4 * std::abs(step)) return false;
   return true;
 }
 

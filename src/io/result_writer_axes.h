@@ -32,7 +32,10 @@ struct Period {
 };
 [[nodiscard]] Period covered_period(const TimeAxis& axis);
 
-/// True if a raster with one cell size places every cell right, within a hundredth of a cell (one value: true).
+/// The centres as meant: equal steps where they are equal but for rounding to float32 (files often keep coordinates
+/// so), which would make GDAL find no raster at 0.01 degrees (it allows a thousandth of a step); others unchanged.
+[[nodiscard]] std::vector<double> without_float_noise(std::span<const double> centres);
+/// True if a raster with one cell size places every cell right, within 1e-4 of a cell (one value: true).
 [[nodiscard]] bool evenly_spaced(std::span<const double> centres);
 /// Cell ends half way between centres, two a cell; latitudes end at the poles.
 [[nodiscard]] std::vector<double> bounds_between(std::span<const double> centres, AxisRole role);

@@ -82,12 +82,12 @@ class ResultFile {
     const std::string y = free_name(place_.y.name, earth ? "lat" : "y");
     const std::string x = free_name(place_.x.name, earth ? "lon" : "x");
     cell_dims_ = {file_.define_dimension(y, place_.rows), file_.define_dimension(x, place_.cols)};
-    const bool uneven = place_.kind != GeometryKind::curvilinear && earth &&
-                        (!evenly_spaced(place_.y.values) || !evenly_spaced(place_.x.values));
+    const bool uneven = earth && (!evenly_spaced(place_.y.values) || !evenly_spaced(place_.x.values));
     if (place_.kind == GeometryKind::latlon || place_.kind == GeometryKind::projected) {
       define_axis(y, cell_dims_[0], place_.y, {'Y', place_.kind}, uneven);
       define_axis(x, cell_dims_[1], place_.x, {'X', place_.kind}, uneven);
     }
+    // GDAL finds no raster in uneven axes; with the place of every cell it can still warp the map, the right way up.
     if (uneven) return define_places("lat_of_cell", "lon_of_cell", spread_rows(place_), spread_cols(place_));
     if (!earth && !place_.lat.empty()) define_places("lat", "lon", place_.lat, place_.lon);
   }
