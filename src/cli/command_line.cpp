@@ -170,7 +170,7 @@ void Commands::explain() {
 
 void Commands::forge() {
   CLI::App* sub = command("forge", "Makes a grid or panel whose memory and trend are known, and maps of that truth.",
-                          "  lagscape forge jobs/harrow_soil_wetness_recipe.toml --set output.file=wet.nc\n");
+                          "  lagscape forge jobs/forge_harrow_soil_wetness.toml --set output.file=wet.nc\n");
   arguments(sub, "RECIPE.toml", "recipe to follow", false);
   set_option(sub, "recipe", "seed=2");
   replace(sub, "existing files");

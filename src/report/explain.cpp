@@ -87,12 +87,10 @@ std::string measure_text(const Measure& measure) {
   out += fmt::format("Unit\n  {}\n", unit_words(measure.unit));
   out += paragraph("Formula", measure.formula) + paragraph("Source", measure.source) +
          paragraph("Cautions", measure.cautions);
-  const bool cube = measure.group == MapGroup::cubes;
-  out += fmt::format("In a job\n  [output] {} = [\"{}\"]", cube ? "cubes" : "maps", measure.name);
-  if (!cube)
-    out += fmt::format("; it belongs to the group {}{}", group_name(measure.group),
-                       measure.standard ? " and to standard" : "");
-  return out + "\n";
+  if (measure.group == MapGroup::cubes)
+    return out + fmt::format("In a job\n  [output] cubes = [\"{}\"]\n", measure.name);
+  out += fmt::format("In a job\n  [output] maps = [\"{}\"]\n", measure.name);
+  return out + fmt::format("Group of maps\n  {}{}\n", group_name(measure.group), measure.standard ? ", standard" : "");
 }
 
 std::string group_text(std::string_view name) {

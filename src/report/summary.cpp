@@ -33,7 +33,7 @@ std::string values_words(const ValueCounts& values) {
   add(values.infinite, "infinite");
   add(values.out_of_range, "outside the valid range");
   add(values.job_missing, "equal to missing_values of the job");
-  return parts.empty() ? "none" : join(parts, ", ");
+  return parts.empty() ? "no value" : "values: " + join(parts, ", ");
 }
 
 std::string record_text(const RunReport& report) {
@@ -43,7 +43,7 @@ std::string record_text(const RunReport& report) {
   out += line("time", time_words(panel));
   out += line("place", panel.geometry.describe());
   out += line("input", counted(panel.sources.size(), "file"));
-  out += line("set aside", "values " + values_words(report.values));
+  out += line("set aside", values_words(report.values));
   if (report.values_in_short_seasons > 0) {
     out += line("", fmt::format("{} in seasons that have fewer than two values",
                                 counted(report.values_in_short_seasons, "value")));
@@ -78,7 +78,7 @@ std::string memory_text(const RunReport& report) {
   const Spread& size = report.effective_sample_size;
   if (time.count > 0 && size.count > 0) {
     const std::string text =
-        fmt::format("In the median {} the {} steps are worth {} independent values; one takes {} years.",
+        fmt::format("In the median {} {} steps are worth {} independent values; a new one takes {} years.",
                     place_noun(report.plan.panel), grouped(report.plan.panel.axis.size()), figure(size.median),
                     figure(report.decorrelation_years_median));
     out += "  " + wrapped(text, kReportWidth, 2, 2) + "\n";
@@ -165,7 +165,7 @@ std::string result_text(const RunReport& report) {
     return out + fmt::format("    ogrinfo -so -al {}\n", shell_word(file));
   }
   out += "  Open it in a GIS as a raster, one layer a map; a first look:\n";
-  return out + fmt::format("    gdalinfo -stats {}\n", shell_word(fmt::format("NETCDF:\"{}\":{}", file, map)));
+  return out + fmt::format("    gdalinfo -mm {}\n", shell_word(fmt::format("NETCDF:\"{}\":{}", file, map)));
 }
 
 constexpr std::string_view kCaution =

@@ -13,7 +13,7 @@
 namespace lagscape {
 namespace {
 
-constexpr std::size_t kColumn = 15;
+constexpr std::size_t kColumn = 16;
 constexpr std::size_t kMostFiles = 8;
 constexpr std::size_t kMostFilesInCommand = 3;
 

@@ -40,9 +40,9 @@ std::string time_words(const Panel& panel) {
   const std::string every = step_words(axis.step());
   const std::string steps = every.starts_with("every ") ? fmt::format("{}, one {}", counted(axis.size(), "step"), every)
                                                         : counted(axis.size(), every + " step");
-  std::string words =
-      fmt::format("{}, {} to {} ({} years), {} calendar", steps, axis.label(0), axis.label(axis.size() - 1),
-                  human_number(axis.years(), 3), calendar_name(axis.calendar()));
+  const std::string years = human_number(axis.years(), 3);
+  std::string words = fmt::format("{}, {} to {} ({}), {} calendar", steps, axis.label(0), axis.label(axis.size() - 1),
+                                  years == "1" ? "1 year" : years + " years", calendar_name(axis.calendar()));
   if (panel.steps_present < axis.size()) {
     words += fmt::format("; {} of them in no file (missing)", grouped(axis.size() - panel.steps_present));
   }
