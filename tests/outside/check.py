@@ -14,6 +14,7 @@ REFERENCE = pathlib.Path(__file__).resolve().parents[1] / "reference"
 # 6e-8. What goes through numeric derivatives (limits of tau) or far tails (p-values) is given more room.
 FLOAT32 = (2e-7, 1e-9)
 LOOSER = {"decorrelation_time_low": (2e-6, 1e-9), "decorrelation_time_high": (2e-6, 1e-9), "trend_p": (1e-6, 1e-12),
+          "trend_p_ols": (1e-6, 1e-12), "trend_p_ols_neff": (1e-6, 1e-12),
           "trend_p_independent": (1e-6, 1e-12), "trend_p_field": (1e-6, 1e-12), "ljung_box_p": (1e-6, 1e-12)}
 EXACT = {"status", "valid_count", "pair_count", "ar_order", "trend_class", "first_time", "last_time"}
 IN_UNITS = {"mean", "mean_low", "mean_high", "residual_sd", "innovation_sd", "trend_slope", "trend_slope_low", "trend_slope_high",
@@ -44,6 +45,7 @@ def expected_maps(cells, axis, settings, times, rate=0.10, control="bh"):
         maps[map_name] = one(key, per_year)
     for map_name, key in (("first_time", "first"), ("last_time", "last")):
         maps[map_name] = np.array([times[cell[key]] if cell["valid_count"] else np.nan for cell in found])
+    maps["trend_p_ols_neff"], maps["trend_p_ols"] = maps["trend_p"], maps["trend_p_independent"]
     p = maps["trend_p"]
     maps["trend_p_field"] = oracle.adjusted(p, control)
     stands = (p <= settings.alpha) & (maps["trend_p_field"] <= rate)

@@ -113,13 +113,9 @@ class Correlogram:
             self.end = int(missing[0]) - 1
 
     def bartlett(self, z):
-        """Bartlett (1946): limit at lag k under an MA(k - 1).
-
-        Choice: with gaps n is nu_k + k, the denominator of c_k (n for a complete record).
-        """
+        """Bartlett (1946): limit at lag k under an MA(k - 1). With gaps n is the number of pairs, nu_k."""
         r2 = np.concatenate([[0.0, 0.0], np.cumsum(self.r[1:] ** 2)])[: self.n]  # missing from the first missing lag on
-        k = np.arange(self.n)
-        limit = z * np.sqrt((1 + 2 * r2) / (self.pairs + k))
+        limit = z * np.sqrt((1 + 2 * r2) / (self.n if self.m == self.n else np.maximum(self.pairs, 1)))
         limit[np.isnan(self.r)] = np.nan
         limit[0] = np.nan
         return limit
@@ -127,7 +123,8 @@ class Correlogram:
     def partial(self, longest):
         """Durbin-Levinson on r; on the positive semi-definite S_k / S_0 if a partial autocorrelation leaves (-1, 1)."""
         found = durbin_levinson(self.r, min(longest, self.end))
-        if np.any(np.abs(found) >= 1):
+        self.inconsistent = bool(np.any(np.abs(found) >= 1))
+        if self.inconsistent:
             found = durbin_levinson(self.psd, min(longest, self.end))
         return np.concatenate([[np.nan], found, np.full(longest - len(found), np.nan)])
 
@@ -269,11 +266,14 @@ def crossing(r, level, end):
 
 
 def integral(r, end):
-    """1/2 + the sum up to the last lag before r <= 0: the one-sided scale, half of 1 + 2 sum."""
+    """1/2 + the sum up to the last lag before r <= 0: the one-sided scale, half of 1 + 2 sum.
+
+    The sums tell whether they were finished: else the scan ended first, and they are lower bounds.
+    """
     for k in range(1, end + 1):
         if r[k] <= 0:
-            return 0.5 + float(np.sum(r[1:k]))
-    return np.nan
+            return 0.5 + float(np.sum(r[1:k])), True
+    return 0.5 + float(np.sum(r[1 : end + 1])), False
 
 
 def geyer(r, end):
@@ -282,10 +282,10 @@ def geyer(r, end):
     for j in range(0, (end + 1) // 2):
         pair = r[2 * j] + r[2 * j + 1]
         if pair <= 0:
-            return -1 + 2 * total
+            return -1 + 2 * total, True
         smallest = min(smallest, pair)
         total += smallest
-    return np.nan
+    return -1 + 2 * total, False
 
 
 def sokal(r, end):
@@ -294,8 +294,8 @@ def sokal(r, end):
     for window in range(1, end + 1):
         half += r[window]
         if window >= 5 * half:
-            return 2 * half
-    return np.nan
+            return 2 * half, True
+    return 2 * half, False
 
 
 # --- one cell ---------------------------------------------------------------------------------------------------------
@@ -322,17 +322,19 @@ def describe(x, settings, axis):
     """What there was to work with, and the status bits that follow from it."""
     valid = np.isfinite(x)
     m = int(valid.sum())
-    out = {"valid_count": m, "first": np.nan, "last": np.nan, "longest_gap": np.nan, "valid_share": 0.0}
+    out = {"valid_count": m, "first": np.nan, "last": np.nan, "longest_gap": np.nan, "valid_share": np.nan}
     if m == 0:
         return out, NO_DATA
     first, last = (int(i) for i in np.flatnonzero(valid)[[0, -1]])
     span = last - first + 1
     out.update(first=first, last=last, span=span, valid_share=m / span, longest_gap=longest_run(~valid[first : last + 1]))
     y = x[valid]
+    out["mean"] = y.mean()  # Choice: also where there are no other estimates
     status = 0
-    if m < max(settings.min_count, 20):
+    parameters = axis.season_columns().shape[1] + 1
+    if m < max(settings.min_count, 20, parameters + 10) or m / span < settings.min_share:
         status |= TOO_FEW
-    if m / span < settings.min_share:
+    if m / span < 0.8:
         status |= GAPS
     if y.max() - y.min() <= 8 * 2.2e-16 * np.max(np.abs(y)):
         status |= CONSTANT
@@ -350,9 +352,9 @@ def analyse(x, axis, settings):
     """
     out, status = describe(x, settings, axis)
     out["status"] = status
-    if status & CONSTANT and not status & (TOO_FEW | GAPS):
-        out.update(mean=x[np.isfinite(x)].mean(), slope=0.0, trend_total=0.0)
-    if status & (NO_DATA | TOO_FEW | CONSTANT | GAPS):
+    if status & CONSTANT:
+        out.update(slope=0.0, trend_total=0.0)
+    if status & (NO_DATA | TOO_FEW | CONSTANT):
         return out
     fit = Fit(x, axis)
     if fit.seasons_left < 2:
@@ -377,13 +379,16 @@ def analyse(x, axis, settings):
         assert np.allclose(library[1:], out["partial_autocorrelation"][1:], rtol=1e-9, atol=1e-11)
 
     r, end = acf.r, acf.end
-    out.update(efolding_time=crossing(r, np.exp(-1), end), zero_crossing_time=crossing(r, 0.0, end),
-               integral_time=integral(r, end), geyer_time=geyer(r, end), sokal_time=sokal(r, end))
+    out.update(efolding_time=crossing(r, np.exp(-1), end), zero_crossing_time=crossing(r, 0.0, end))
+    finished = []
+    for name, rule in (("integral_time", integral), ("geyer_time", geyer), ("sokal_time", sokal)):
+        out[name], reached = rule(r, end)
+        finished.append(reached)
     # Choice: the first lag at which |r| is not above the limit of the correlogram.
     inside_limits = np.flatnonzero(np.abs(r[1 : end + 1]) <= limit[1 : end + 1])
     out["first_lag_within_limits"] = float(inside_limits[0] + 1) if len(inside_limits) else np.nan
-    scanned = ("efolding_time", "zero_crossing_time", "integral_time", "geyer_time", "sokal_time", "first_lag_within_limits")
-    beyond = any(np.isnan(out[name]) for name in scanned)
+    crossings = ("efolding_time", "zero_crossing_time", "first_lag_within_limits")
+    beyond = not all(finished) or any(np.isnan(out[name]) for name in crossings)
 
     h = min(10, m // 5)
     q_statistic = m * (m + 2) * np.sum(r[1 : h + 1] ** 2 / acf.pairs[1 : h + 1])
@@ -395,7 +400,7 @@ def analyse(x, axis, settings):
     out["ar1_time"] = (1 + f1[0]) / (1 - f1[0])  # Choice: from the corrected coefficient
     at_bound |= autoregression(fit, acf, n, z, frequencies, settings, out)
     trend(fit, acf, n, f1[0], settings, axis, out)
-    out["status"] |= (UNIT_ROOT if at_bound else 0) | (LAG_RANGE if beyond else 0)
+    out["status"] |= (UNIT_ROOT if at_bound else 0) | (LAG_RANGE if beyond else 0) | (GAPS if acf.inconsistent else 0)
     return out
 
 
@@ -409,7 +414,7 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
     f_hat, _, terms = fits[p]
     f, at_bound = corrected(f_hat, m, frequencies)
     tau, error = np.exp(ln_tau(f)), ln_tau_error(f, terms)
-    out.update(ar_order=p, ar_coefficients=np.concatenate([f, np.full(settings.max_order - p, np.nan)]),
+    out.update(ar_order=p, ar_coefficients=np.concatenate([f, np.zeros(settings.max_order - p)]),
                # Choice: the spread of the innovations that goes with the corrected coefficients and the residual's sd.
                innovation_sd=out["residual_sd"] * np.sqrt(np.prod(1 - partials(f) ** 2)),
                decorrelation_time=np.clip(tau, 1 / n, n / 2),
@@ -420,8 +425,10 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
     squares = np.where(np.abs(rho) < 1e-6, 0, rho)  # the sum ends where rho does, not where its square does
     out["effective_sample_size"] = size
     out["effective_sample_size_for_variance"] = np.clip(m / variance_inflation(acf.pairs, squares**2, m), 2, m)
-    # Zwiers and von Storch (1995).  Choice: the spread is that of the residual, for the season is not sampling error.
-    half = stats.t.ppf(0.5 + settings.confidence / 2, size - 1) * np.sqrt(fit.sse / m / (size - 1))
+    # Zwiers and von Storch (1995).  Choice: the spread is that of the residual, for the season is not sampling error, with
+    # the degrees of freedom of the fit; SSE/m where the mean alone is fitted.
+    spread = fit.sse / m * (m - 1) / (m - fit.q)
+    half = stats.t.ppf(0.5 + settings.confidence / 2, size - 1) * np.sqrt(spread / (size - 1))
     out.update(mean=fit.mean, mean_low=fit.mean - half, mean_high=fit.mean + half)
     return at_bound
 
