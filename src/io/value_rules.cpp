@@ -1,0 +1,237 @@
+#include "io/value_rules.h"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <array>
+#include <cmath>
+#include <cstdint>
+#include <cstring>
+#include <optional>
+
+#include "lagscape/base/text.h"
+
+namespace lagscape {
+namespace {
+
+constexpr double kNaN = std::numeric_limits<double>::quiet_NaN();
+constexpr double kInfinity = std::numeric_limits<double>::infinity();
+
+// Calls `use` with a value of the type that is stored.
+template <typename Use>
+auto with_type(RawType type, Use use) {
+  switch (type) {
+    case RawType::i8:
+      return use(std::int8_t{});
+    case RawType::u8:
+      return use(std::uint8_t{});
+    case RawType::i16:
+      return use(std::int16_t{});
+    case RawType::u16:
+      return use(std::uint16_t{});
+    case RawType::i32:
+      return use(std::int32_t{});
+    case RawType::u32:
+      return use(std::uint32_t{});
+    case RawType::i64:
+      return use(std::int64_t{});
+    case RawType::u64:
+      return use(std::uint64_t{});
+    case RawType::f32:
+      return use(float{});
+    default:
+      return use(double{});
+  }
+}
+
+template <typename T>
+void widen(const std::byte* stored, std::size_t count, double* out) {
+  const T* const from = reinterpret_cast<const T*>(stored);
+  for (std::size_t i = 0; i < count; ++i) out[i] = static_cast<double>(from[i]);
+}
+
+// Stored tests, then unpacking. Every loop is a select over neighbouring cells, so that it vectorises.
+void unpack(const ValueRules& rules, std::size_t count, double* values, ValueCounts& counts) {
+  for (const double missing : rules.missing)
+    for (std::size_t i = 0; i < count; ++i) values[i] = values[i] == missing ? kNaN : values[i];
+  std::int64_t fill = 0, infinite = 0, outside = 0;
+  const double low = rules.low, high = rules.high, scale = rules.scale, offset = rules.offset;
+  const double unpacked_low = rules.unpacked_low, unpacked_high = rules.unpacked_high;
+  for (std::size_t i = 0; i < count; ++i) {
+    const double stored = values[i], value = stored * scale + offset;
+    const bool none = std::isnan(stored), endless = std::fabs(stored) == kInfinity;
+    const bool out = (stored < low) | (stored > high) | (value < unpacked_low) | (value > unpacked_high);
+    fill += none ? 1 : 0;
+    infinite += endless ? 1 : 0;
+    outside += (out & !endless) ? 1 : 0;
+    values[i] = (endless | out) ? kNaN : value;
+  }
+  counts.fill += static_cast<std::size_t>(fill);
+  counts.infinite += static_cast<std::size_t>(infinite);
+  counts.out_of_range += static_cast<std::size_t>(outside);
+}
+
+// A number as the type stores it, or nothing if it cannot hold it: a fill of 1e20 says nothing about shorts.
+std::optional<double> as_stored(double value, RawType type) {
+  return with_type(type, [value](auto sample) -> std::optional<double> {
+    using T = decltype(sample);
+    if constexpr (std::is_floating_point_v<T>) {
+      return static_cast<double>(static_cast<T>(value));
+    } else {
+      double whole = value;
+      // Attributes are often written signed where `_Unsigned` makes the values unsigned.
+      if (std::is_unsigned_v<T> && whole < 0) whole += std::ldexp(1.0, std::numeric_limits<T>::digits);
+      if (whole != std::floor(whole) || whole < static_cast<double>(std::numeric_limits<T>::min()) ||
+          whole > static_cast<double>(std::numeric_limits<T>::max()))
+        return std::nullopt;
+      return whole;
+    }
+  });
+}
+
+RawType raw_type(nc_type type, const std::string& is_unsigned) {
+  const bool yes = is_unsigned == "true", no = is_unsigned == "false";
+  switch (type) {
+    case NC_BYTE:
+      return yes ? RawType::u8 : RawType::i8;
+    case NC_UBYTE:
+      return no ? RawType::i8 : RawType::u8;
+    case NC_SHORT:
+      return yes ? RawType::u16 : RawType::i16;
+    case NC_USHORT:
+      return no ? RawType::i16 : RawType::u16;
+    case NC_INT:
+      return yes ? RawType::u32 : RawType::i32;
+    case NC_UINT:
+      return no ? RawType::i32 : RawType::u32;
+    case NC_INT64:
+      return yes ? RawType::u64 : RawType::i64;
+    case NC_UINT64:
+      return no ? RawType::i64 : RawType::u64;
+    case NC_FLOAT:
+      return RawType::f32;
+    default:
+      return RawType::f64;
+  }
+}
+
+// The fill that never-written data reads as; bytes have none, and neither has a variable that was written without
+// filling.
+std::optional<double> default_fill(const NcFile& file, const NcVariable& variable) {
+  if (variable.type == NC_BYTE || variable.type == NC_UBYTE) return std::nullopt;
+  int without = 0;
+  std::array<std::byte, 8> fill{};
+  file.check(nc_inq_var_fill(variable.group, variable.id, &without, fill.data()), "reading the fill value",
+             variable.path);
+  if (without != 0) return std::nullopt;
+  return with_type(raw_type(variable.type, ""), [&fill](auto sample) {
+    std::memcpy(&sample, fill.data(), sizeof(sample));
+    return std::optional<double>(static_cast<double>(sample));
+  });
+}
+
+std::optional<double> first_number(const Attributes& attributes, const char* name) {
+  const std::vector<double> values = number_attribute(attributes, name);
+  return values.empty() ? std::nullopt : std::optional<double>(values.front());
+}
+
+// A valid range in real numbers on packed integers is meant for the unpacked values (NetCDF Users Guide, appendix A,
+// "valid_range": "if valid_range is the same type as scale_factor ... then it is intended to apply to unpacked data").
+bool range_is_unpacked(const Attributes& attributes, const char* name, RawType type) {
+  const Attribute* found = find_attribute(attributes, name);
+  return type != RawType::f32 && type != RawType::f64 && found != nullptr &&
+         std::holds_alternative<std::vector<double>>(found->value) &&
+         find_attribute(attributes, "scale_factor") != nullptr;
+}
+
+// An integer type cannot hold every bound; what it cannot hold limits nothing or is rounded harmlessly.
+double bound(double value, RawType type) { return as_stored(value, type).value_or(value); }
+
+void read_range(const Attributes& attributes, ValueRules& rules, std::vector<std::string>& notes) {
+  const auto apply = [&](const char* name, std::optional<double> low, std::optional<double> high) {
+    if (range_is_unpacked(attributes, name, rules.type)) {
+      rules.unpacked_low = low.value_or(rules.unpacked_low);
+      rules.unpacked_high = high.value_or(rules.unpacked_high);
+      notes.push_back(fmt::format("{} is given in real numbers and taken as unpacked values", name));
+      return;
+    }
+    if (low) rules.low = bound(*low, rules.type);
+    if (high) rules.high = bound(*high, rules.type);
+  };
+  if (const auto low = first_number(attributes, "valid_min")) apply("valid_min", low, std::nullopt);
+  if (const auto high = first_number(attributes, "valid_max")) apply("valid_max", std::nullopt, high);
+  const std::vector<double> range = number_attribute(attributes, "valid_range");
+  if (range.size() == 2) apply("valid_range", range[0], range[1]);
+  if (rules.low > rules.high) {
+    notes.push_back(fmt::format("the valid range of the file is empty ({} to {}) and is not used",
+                                number_text(rules.low), number_text(rules.high)));
+    rules.low = -kInfinity;
+    rules.high = kInfinity;
+  }
+}
+
+void read_missing(const NcFile& file, const NcVariable& variable, const Attributes& attributes, ValueRules& rules) {
+  std::vector<double> declared = number_attribute(attributes, "missing_value");
+  const std::vector<double> fill = number_attribute(attributes, "_FillValue");
+  declared.insert(declared.end(), fill.begin(), fill.end());
+  if (fill.empty())
+    if (const auto value = default_fill(file, variable)) declared.push_back(*value);
+  for (const double value : declared) {
+    const auto stored = as_stored(value, rules.type);
+    if (!stored || std::isnan(*stored)) continue;  // NaN is always missing
+    if (std::find(rules.missing.begin(), rules.missing.end(), *stored) == rules.missing.end())
+      rules.missing.push_back(*stored);
+  }
+}
+
+}  // namespace
+
+std::size_t ValueRules::bytes() const {
+  return with_type(type, [](auto sample) { return sizeof(sample); });
+}
+
+void ValueRules::decode(const std::byte* stored, std::size_t count, double* out, ValueCounts& counts) const {
+  with_type(type, [=](auto sample) { widen<decltype(sample)>(stored, count, out); });
+  unpack(*this, count, out, counts);
+  for (const double unwanted : job_missing) {
+    std::int64_t found = 0;
+    for (std::size_t i = 0; i < count; ++i) {
+      found += out[i] == unwanted ? 1 : 0;
+      out[i] = out[i] == unwanted ? kNaN : out[i];
+    }
+    counts.job_missing += static_cast<std::size_t>(found);
+  }
+}
+
+bool is_number_type(nc_type type) {
+  return type != NC_CHAR && type != NC_STRING && type > NC_NAT && type <= NC_MAX_ATOMIC_TYPE;
+}
+
+ValueRules read_value_rules(const NcFile& file, const NcVariable& variable, const InputRequest& request,
+                            std::vector<std::string>& notes) {
+  const Attributes attributes = file.attributes(variable);
+  ValueRules rules;
+  rules.type = raw_type(variable.type, lower(text_attribute(attributes, "_Unsigned")));
+  read_missing(file, variable, attributes, rules);
+  read_range(attributes, rules, notes);
+  rules.scale = first_number(attributes, "scale_factor").value_or(1);
+  rules.offset = first_number(attributes, "add_offset").value_or(0);
+  if (rules.scale == 0 || !std::isfinite(rules.scale) || !std::isfinite(rules.offset))
+    throw Error(ErrorKind::input,
+                fmt::format("the packing cannot be undone: scale_factor {}, add_offset {}", rules.scale, rules.offset),
+                fmt::format("file: {}, variable: {}", file.path(), variable.path),
+                "correct the attributes of the file");
+  // A job's -99.9 means what a file of floats holds for it.
+  const bool plain_float = rules.type == RawType::f32 && rules.scale == 1 && rules.offset == 0;
+  const auto as_held = [&](double value) {
+    return plain_float ? static_cast<double>(static_cast<float>(value)) : value;
+  };
+  if (request.valid_range) {
+    rules.unpacked_low = std::max(rules.unpacked_low, as_held((*request.valid_range)[0]));
+    rules.unpacked_high = std::min(rules.unpacked_high, as_held((*request.valid_range)[1]));
+  }
+  for (const double value : request.missing_values) rules.job_missing.push_back(as_held(value));
+  return rules;
+}
+
+}  // namespace lagscape
