@@ -114,7 +114,8 @@ class Correlogram:
 
     def bartlett(self, z):
         """Bartlett (1946): limit at lag k under an MA(k - 1). With gaps n is the number of pairs, nu_k."""
-        r2 = np.concatenate([[0.0, 0.0], np.cumsum(self.r[1:] ** 2)])[: self.n]  # missing from the first missing lag on
+        # Choice: a lag that is missing adds nothing to the limits of longer ones.
+        r2 = np.concatenate([[0.0, 0.0], np.cumsum(np.nan_to_num(self.r[1:]) ** 2)])[: self.n]
         limit = z * np.sqrt((1 + 2 * r2) / (self.n if self.m == self.n else np.maximum(self.pairs, 1)))
         limit[np.isnan(self.r)] = np.nan
         limit[0] = np.nan
@@ -309,13 +310,8 @@ def longest_run(flags):
 
 
 def variance_inflation(pairs, rho, m):
-    """[m + 2 sum nu_k rho_k] / m, summed until |rho_k| < 1e-6."""
-    total = float(m)
-    for k in range(1, len(rho)):
-        if abs(rho[k]) < 1e-6:
-            break
-        total += 2 * pairs[k] * rho[k]
-    return total / m
+    """[m + 2 sum nu_k rho_k] / m over all lags of the record."""
+    return (m + 2 * np.sum(pairs[1:] * rho[1:])) / m
 
 
 def describe(x, settings, axis):
@@ -329,7 +325,6 @@ def describe(x, settings, axis):
     span = last - first + 1
     out.update(first=first, last=last, span=span, valid_share=m / span, longest_gap=longest_run(~valid[first : last + 1]))
     y = x[valid]
-    out["mean"] = y.mean()  # Choice: also where there are no other estimates
     status = 0
     parameters = axis.season_columns().shape[1] + 1
     if m < max(settings.min_count, 20, parameters + 10) or m / span < settings.min_share:
@@ -338,7 +333,7 @@ def describe(x, settings, axis):
         status |= GAPS
     if y.max() - y.min() <= 8 * 2.2e-16 * np.max(np.abs(y)):
         status |= CONSTANT
-    if np.max(np.unique(y, return_counts=True)[1]) > m / 2:
+    elif np.max(np.unique(y, return_counts=True)[1]) > m / 2:
         status |= TIES  # Choice: more than half of the values are one and the same
     if span / axis.steps_per_year < 10:
         status |= SHORT
@@ -352,8 +347,8 @@ def analyse(x, axis, settings):
     """
     out, status = describe(x, settings, axis)
     out["status"] = status
-    if status & CONSTANT:
-        out.update(slope=0.0, trend_total=0.0)
+    if status & CONSTANT and not status & TOO_FEW:  # a constant record has a mean and no trend, and that is all
+        out.update(mean=x[np.isfinite(x)].mean(), slope=0.0, trend_total=0.0)
     if status & (NO_DATA | TOO_FEW | CONSTANT):
         return out
     fit = Fit(x, axis)
@@ -390,9 +385,9 @@ def analyse(x, axis, settings):
     crossings = ("efolding_time", "zero_crossing_time", "first_lag_within_limits")
     beyond = not all(finished) or any(np.isnan(out[name]) for name in crossings)
 
-    h = min(10, m // 5)
+    h = min(10, m // 5, end)  # Choice: it ends before a missing lag, as the other sums do
     q_statistic = m * (m + 2) * np.sum(r[1 : h + 1] ** 2 / acf.pairs[1 : h + 1])
-    out["ljung_box_p"] = stats.chi2.sf(q_statistic, h)  # missing if one of the lags is
+    out["ljung_box_p"] = stats.chi2.sf(q_statistic, h)
 
     frequencies = axis.frequencies()
     f1, at_bound = corrected(r[1:2], m, frequencies)
@@ -422,9 +417,8 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
                decorrelation_time_high=np.clip(tau * np.exp(z * error), 1 / n, n))
     rho = model_acf(f, acf.n - 1)
     size = np.clip(m / variance_inflation(acf.pairs, rho, m), 2, m)
-    squares = np.where(np.abs(rho) < 1e-6, 0, rho)  # the sum ends where rho does, not where its square does
     out["effective_sample_size"] = size
-    out["effective_sample_size_for_variance"] = np.clip(m / variance_inflation(acf.pairs, squares**2, m), 2, m)
+    out["effective_sample_size_for_variance"] = np.clip(m / variance_inflation(acf.pairs, rho**2, m), 2, m)
     # Zwiers and von Storch (1995).  Choice: the spread is that of the residual, for the season is not sampling error, with
     # the degrees of freedom of the fit; SSE/m where the mean alone is fitted.
     spread = fit.sse / m * (m - 1) / (m - fit.q)

@@ -106,7 +106,7 @@ class OracleTest(unittest.TestCase):
         for n, f in ((50, 0.3), (100, 0.6), (100, 0.9), (500, 0.9)):
             expected = TOYS[(f"AR1 n={n} phi={f} sigma_e=1", "var_inflation_mean_exact n/n_eff", "")]
             found = oracle.variance_inflation(n - np.arange(n), oracle.model_acf(np.array([f]), n - 1), n)
-            self.assertAlmostEqual(found, expected, delta=3e-5)  # the sum ends at rho = 1e-6
+            self.assertAlmostEqual(found, expected, places=10)
 
     def test_adjusted_p_values_are_those_of_the_publication(self):
         # The 15 p-values of Benjamini and Hochberg (1995), section 3.2.
