@@ -1,6 +1,7 @@
 #include "io/result_writer_netcdf.h"
 
 #include <fmt/format.h>
+#include <hdf5.h>
 
 #include <algorithm>
 #include <array>
@@ -20,6 +21,10 @@ namespace {
 
 constexpr std::size_t kChunkSide = 512;  // 1 MiB of float32 a chunk
 constexpr std::size_t kChunkValues = kChunkSide * kChunkSide;
+
+// HDF5 1.10 tidies up when the program ends, and then crashes over a file whose last bytes a full disk refused: the
+// exit code would be the crash's. We close every file ourselves. It must be told before its first use, hence here.
+[[maybe_unused]] const herr_t no_tidying = H5dont_atexit();
 
 template <class T>
 constexpr nc_type netcdf_type() {
@@ -41,13 +46,13 @@ class ResultFile {
   }
 
   void write() {
+    define_mapping();
     if (place_.is_sites())
       define_sites();
     else
       define_grid();
     define_layers();
     define_period();
-    define_mapping();
     std::vector<int> variables;
     for (const std::size_t map : maps_) variables.push_back(define_map(set_.maps[map]));
     file_.put_attributes(NC_GLOBAL, set_.global);
@@ -75,6 +80,16 @@ class ResultFile {
     if (wanted.empty()) wanted = otherwise;
     while (!taken_.insert(wanted).second) wanted += "_axis";
     return wanted;
+  }
+
+  void define_mapping() {
+    const auto mapping = mapping_of(place_);
+    if (!mapping) return;
+    // Our own "crs" and a mapping called so in the input never meet: one of them is written.
+    mapping_name_ = mapping->name == "crs" ? "crs" : free_name(mapping->name, "grid_mapping");
+    const int id = file_.define_variable(mapping_name_, NC_INT, {});
+    file_.put_attributes(id, mapping->attributes);
+    pending_.emplace_back(id, std::vector<double>{0});
   }
 
   void define_grid() {
@@ -120,6 +135,8 @@ class ResultFile {
     names_id_ = file_.define_variable("station_id", NC_CHAR, std::array{cell_dims_[0], letters});
     file_.put_attributes(names_id_, {{"long_name", "name of the site"}, {"cf_role", "timeseries_id"}});
     if (place_.lat.empty()) return;
+    // GDAL asks the first variable that is no coordinate for the reference system of the points.
+    file_.put_text(names_id_, "grid_mapping", mapping_name_);
     define_places("lat", "lon", place_.lat, place_.lon);
     if (place_.altitude.empty()) return;
     coordinates_.push_back(free_name("altitude", "altitude"));
@@ -156,16 +173,6 @@ class ResultFile {
     define_coordinate("time", {}, time_attributes(set_.time), {begin + (end - begin) / 2});
     define_coordinate("time_bnds", std::array{ends_dim()}, {}, {begin, end});
     coordinates_.emplace_back("time");
-  }
-
-  void define_mapping() {
-    const auto mapping = mapping_of(place_);
-    if (!mapping) return;
-    // Our own "crs" and a mapping called so in the input never meet: one of them is written.
-    mapping_name_ = mapping->name == "crs" ? "crs" : free_name(mapping->name, "grid_mapping");
-    const int id = file_.define_variable(mapping_name_, NC_INT, {});
-    file_.put_attributes(id, mapping->attributes);
-    pending_.emplace_back(id, std::vector<double>{0});
   }
 
   int ends_dim() {

@@ -509,6 +509,7 @@ TEST_F(ResultWriter, SitesGetMapsCubesAndATable) {
   EXPECT_EQ(maps.dims("mean"), std::vector<std::string>{"station"});
   EXPECT_EQ(maps.text("mean", "coordinates"), "lat lon altitude time");
   EXPECT_EQ(maps.text("station_id", "cf_role"), "timeseries_id");
+  EXPECT_EQ(maps.text("station_id", "grid_mapping"), "crs");  // where GDAL looks for the system of the points
   EXPECT_FALSE(maps.has("autocorrelation") || maps.has("lag") || cubes.has("mean"));
   EXPECT_EQ(cubes.dims("autocorrelation"), (std::vector<std::string>{"station", "lag"}));
   EXPECT_FLOAT_EQ(static_cast<float>(cubes.values("autocorrelation")[1 * 4 + 3]), 3001.1F);  // site 1, lag 3
