@@ -32,17 +32,19 @@ double packed_number(const ForgedVariable& variable, double value) {
   const double high = wide ? std::numeric_limits<std::int32_t>::max() : std::numeric_limits<std::int16_t>::max();
   const double number = std::nearbyint((value - variable.offset) / variable.scale);
   if (number >= low && number <= high && number != variable.fill) return number;
+  const std::string why = number == variable.fill ? "would be stored as the fill value of" : "does not fit into";
   throw Error(ErrorKind::job,
-              fmt::format("a value of {} does not fit into type {} with scale {} and offset {}", human_number(value, 6),
+              fmt::format("a value of {} {} type {} with scale {} and offset {}", human_number(value, 6), why,
                           wide ? "int" : "short", number_text(variable.scale), number_text(variable.offset)),
               "variable: " + variable.name,
-              "choose a coarser scale, an offset in the middle of the values, or type = \"float\"");
+              "choose another scale, fill, or offset (in the middle of the values), or type = \"float\"");
 }
 
 double stored_value(const ForgedVariable& variable, double value) {
   if (variable.packed()) return packed_number(variable, value) * variable.scale + variable.offset;
   if (variable.type == StoredType::f64) return value;
-  if (std::abs(value) <= double{std::numeric_limits<float>::max()}) return static_cast<double>(static_cast<float>(value));
+  if (std::abs(value) <= double{std::numeric_limits<float>::max()})
+    return static_cast<double>(static_cast<float>(value));
   throw Error(ErrorKind::job, fmt::format("a value of {} does not fit into type float", human_number(value, 6)),
               "variable: " + variable.name, "use type = \"double\"");
 }

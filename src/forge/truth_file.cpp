@@ -103,7 +103,7 @@ class TruthFile {
     return id;
   }
   int define_patch() {
-    const int id = file_.variable("patch", NC_SHORT, space_.dimensions);
+    const int id = file_.variable("patch", NC_INT, space_.dimensions);
     std::string names;
     std::vector<std::int64_t> values;
     for (const Patch& patch : variable_.patches) {
