@@ -44,14 +44,15 @@ class Commands {
     app_.name("lagscape");
     app_.formatter(std::make_shared<HelpFormatter>());
     app_.description("Maps of memory, effective sample size and trend from archives of time series.");
-    app_.set_help_flag("--help", "show this help");
+    app_.set_help_flag("-h,--help", "show this help");
     app_.add_flag("--version", version_, "show version, compiler, netCDF library and usable threads");
     app_.allow_extras();
     app_.footer(
-        "Start here:\n  lagscape survey sample_grids/harrow_soil_wetness_*.nc\n  lagscape run "
-        "jobs/harrow_soil_wetness.toml --replace\n\n"
-        "'lagscape COMMAND --help' tells more about a command, 'lagscape explain' about maps,\njob keys and "
-        "methods.\n");
+        "Examples:\n"
+        "  lagscape survey sample_grids/harrow_soil_wetness_*.nc\n"
+        "  lagscape run jobs/harrow_soil_wetness.toml --replace\n\n"
+        "'lagscape COMMAND --help' tells more about a command, 'lagscape explain' about\n"
+        "maps, job keys and methods.\n");
     survey();
     plan();
     run();
@@ -64,7 +65,7 @@ class Commands {
  private:
   CLI::App* command(const std::string& name, const std::string& description, const std::string& examples) {
     CLI::App* sub = app_.add_subcommand(name, description);
-    sub->set_help_flag("--help", "show this help")->group("General");
+    sub->set_help_flag("-h,--help", "show this help")->group("General");
     sub->footer("Examples:\n" + examples);
     sub->allow_extras();
     return sub;
@@ -170,11 +171,29 @@ void Commands::explain() {
 
 void Commands::forge() {
   CLI::App* sub = command("forge", "Makes a grid or panel whose memory and trend are known, and maps of that truth.",
-                          "  lagscape forge jobs/forge_harrow_soil_wetness.toml --set output.file=wet.nc\n");
+                          "  lagscape forge jobs/forge_harrow_soil_wetness.toml --set output.folder=forged\n");
   arguments(sub, "RECIPE.toml", "recipe to follow", false);
   set_option(sub, "recipe", "seed=2");
   replace(sub, "existing files");
   quiet(sub, "notes");
+}
+
+/// What is said about a number of arguments or values that does not fit; CLI11 has noticed, we look up what it was.
+std::string mismatch_words(const CLI::App& sub, const std::string& noticed) {
+  for (const CLI::Option* option : sub.get_options()) {
+    const std::string name = option->get_name();
+    const auto most = static_cast<std::size_t>(option->get_expected_max());
+    if (option->get_positional() && option->get_required() && option->count() == 0) {
+      return fmt::format("{}: {} is missing", sub.get_name(), name);
+    }
+    if (option->get_positional() && option->count() > most) {
+      return fmt::format("{}: '{}' is one argument too many", sub.get_name(), option->results()[most]);
+    }
+    if (!option->get_positional() && option->count() > most && name != "--set") {
+      return fmt::format("{}: {} is given more than once", sub.get_name(), name);
+    }
+  }
+  return fmt::format("{}: {} needs a value", sub.get_name(), noticed.substr(0, noticed.find(':')));
 }
 
 /// What does not belong on the command line: the first such word, with the nearest name.
@@ -263,9 +282,10 @@ CommandLine parse_command_line(int argc, const char* const* argv) {
   }
   const CLI::App* sub = chosen.front();
   if (const auto extra = sub->remaining(); !extra.empty()) refuse_extra(app, sub, extra.front());
-  if (wrong)
-    throw Error(ErrorKind::usage, fmt::format("{}: {}", sub->get_name(), *wrong), "",
+  if (wrong) {
+    throw Error(ErrorKind::usage, mismatch_words(*sub, *wrong), "",
                 fmt::format("'lagscape {} --help' shows how to call it", sub->get_name()));
+  }
   line.command = sub->get_name();
   check(raw, line);
   return line;

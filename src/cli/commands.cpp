@@ -3,11 +3,11 @@
 #include <fmt/format.h>
 #include <unistd.h>
 
+#include <algorithm>
 #include <csignal>
 #include <cstdio>
 #include <filesystem>
 #include <fstream>
-#include <functional>
 
 #include "cli/progress.h"
 #include "lagscape/base/error.h"
@@ -16,6 +16,7 @@
 #include "lagscape/io/survey.h"
 #include "lagscape/job/job_file.h"
 #include "lagscape/pipeline/run.h"
+#include "lagscape/report/layout.h"
 #include "lagscape/report/render.h"
 
 namespace lagscape {
@@ -48,11 +49,18 @@ Log log_to_stderr(bool quiet, ProgressLine& progress) {
 }
 
 void print(const std::string& text) {
-  fmt::print("{}", text);
-  if (std::fflush(stdout) != 0) {
+  if (std::fwrite(text.data(), 1, text.size(), stdout) != text.size() || std::fflush(stdout) != 0) {
     throw Error(ErrorKind::output, "the output could not be written", "standard output",
                 "check where it is sent to and whether that disk is full");
   }
+}
+
+/// True if both would put a result under the same name, so that one run would undo the other.
+bool same_result(const JobSpec& a, const JobSpec& b) {
+  if (fs::path(a.output.file).lexically_normal() != fs::path(b.output.file).lexically_normal()) return false;
+  if (a.output.file.find("{variable}") == std::string::npos) return true;
+  return std::find_first_of(a.input.variables.begin(), a.input.variables.end(), b.input.variables.begin(),
+                            b.input.variables.end()) != a.input.variables.end();
 }
 
 /// All jobs, read and checked before anything runs; the problems of all of them are told together.
@@ -68,6 +76,14 @@ std::vector<JobSpec> read_jobs(const CommandLine& line) {
     }
   }
   if (!problems.empty()) throw Error(ErrorKind::job, "not every job can be run, so none was" + problems);
+  for (std::size_t later = 1; later < jobs.size(); ++later) {
+    for (std::size_t job = 0; job < later; ++job) {
+      if (!same_result(jobs[job], jobs[later])) continue;
+      throw Error(ErrorKind::job, fmt::format("two jobs have the same result, {}", jobs[job].output.file),
+                  fmt::format("{} and {}", jobs[job].path, jobs[later].path),
+                  "give each its own output.file; none was run");
+    }
+  }
   return jobs;
 }
 
@@ -78,7 +94,7 @@ std::string history_command(const CommandLine& line, const std::string& job) {
     const std::string key(trim(option.substr(0, option.find('='))));
     const bool path =
         key == "output.file" || key == "input.files" || key == "input.sites" || key.starts_with("input.mask");
-    if (!path) command += fmt::format(" --set {}", option);
+    if (!path) command += " --set " + shell_word(option);
   }
   return command;
 }
@@ -92,14 +108,18 @@ RunOptions run_options(const CommandLine& line, const std::string& job) {
   return options;
 }
 
-/// Written beside and renamed: a job file under its name is always complete.
-void write_job(const std::string& path, const std::string& text, bool replace) {
-  std::error_code problem;
-  if (!replace && fs::exists(path, problem)) {
-    throw Error(ErrorKind::output, "this job file exists already", path,
+void refuse_existing(const std::string& job, bool replace) {
+  std::error_code ignored;
+  if (!replace && fs::exists(job, ignored)) {
+    throw Error(ErrorKind::output, "this job file exists already", job,
                 "give another name, or --replace to overwrite it");
   }
+}
+
+/// Written beside and renamed: a job file under its name is always complete.
+void write_job(const std::string& path, const std::string& text) {
   const std::string part = path + ".part";
+  std::error_code problem;
   std::ofstream file(part, std::ios::binary);
   file << text;
   file.close();
@@ -114,9 +134,20 @@ void write_job(const std::string& path, const std::string& text, bool replace) {
 
 void survey(const CommandLine& line) {
   ProgressLine none(false);
+  if (!line.write_job.empty()) refuse_existing(line.write_job, line.replace);
   const SurveyReport report = survey_files(line.arguments, line.sites, log_to_stderr(line.quiet, none));
-  if (!line.write_job.empty()) write_job(line.write_job, starter_job(report, line.write_job, line.sites), line.replace);
+  if (!line.write_job.empty()) write_job(line.write_job, starter_job(report, line.write_job, line.sites));
   print(line.json ? survey_json(report) : survey_text(report, line.sites, line.write_job));
+}
+
+/// The command that does what was planned.
+std::string run_command_words(const CommandLine& line) {
+  std::string command = "lagscape run";
+  for (const std::string& job : line.arguments) command += " " + shell_word(job);
+  for (const std::string& option : line.overrides) command += " --set " + shell_word(option);
+  if (line.threads > 0) command += fmt::format(" --threads {}", line.threads);
+  if (line.memory_bytes > 0) command += fmt::format(" --memory {}", line.memory_bytes);
+  return command + (line.replace ? " --replace" : "");
 }
 
 void plan(const CommandLine& line) {
@@ -129,7 +160,7 @@ void plan(const CommandLine& line) {
       plans.push_back(std::move(made));
     }
   }
-  if (line.json) print(plan_json(plans));
+  print(line.json ? plan_json(plans) : fmt::format("\nTo do this:\n  {}\n", run_command_words(line)));
 }
 
 void run(const CommandLine& line) {
@@ -141,15 +172,23 @@ void run(const CommandLine& line) {
     progress.update(done, total, seconds);
   };
   std::vector<RunReport> reports;
-  for (const JobSpec& job : read_jobs(line)) {
-    stop_if_interrupted();
-    for (RunReport& made : run_job(job, run_options(line, job.path), log, show)) {
-      progress.clear();
-      if (!line.json) print((reports.empty() ? "" : "\n") + summary_text(made));
-      reports.push_back(std::move(made));
+  const auto finish = [&] {
+    if (line.json) print(summary_json(reports));
+  };
+  try {
+    for (const JobSpec& job : read_jobs(line)) {
+      stop_if_interrupted();
+      for (RunReport& made : run_job(job, run_options(line, job.path), log, show)) {
+        progress.clear();
+        if (!line.json) print((reports.empty() ? "" : "\n") + summary_text(made));
+        reports.push_back(std::move(made));
+      }
     }
+  } catch (const Error&) {
+    if (!reports.empty()) finish();
+    throw;
   }
-  if (line.json) print(summary_json(reports));
+  finish();
 }
 
 void forge(const CommandLine& line) {

@@ -25,11 +25,19 @@ std::string usage(const CLI::App& app) {
   return line;
 }
 
+/// "-h, --help"
+std::string names(const CLI::Option& option) {
+  std::vector<std::string> all;
+  for (const std::string& name : option.get_snames()) all.push_back("-" + name);
+  for (const std::string& name : option.get_lnames()) all.push_back("--" + name);
+  return join(all, ", ");
+}
+
 std::string group(const CLI::App& app, const std::string& name) {
   std::string out;
   for (const CLI::Option* option : app.get_options()) {
     if (option->get_positional() ? name != "Arguments" : option->get_group() != name) continue;
-    std::string label = option->get_positional() ? option->get_name(true) : option->get_name(false, true);
+    std::string label = option->get_positional() ? option->get_name(true) : names(*option);
     if (!option->get_positional() && option->get_items_expected() > 0) label += " " + option->get_type_name();
     out += listed(label, option->get_description(), kColumn, kWidth);
   }
