@@ -18,9 +18,7 @@ const std::vector<std::array<std::string, 2>>& test_map_texts() {
   static const auto texts = [] {
     std::vector<std::array<std::string, 2>> all;
     for (const TrendTest& test : trend_tests()) {
-      std::string name = "trend_p_" + std::string(test.name);
-      for (char& c : name) c = c == '-' ? '_' : c;
-      all.push_back({name, "p-value of the trend by the test " + std::string(test.name)});
+      all.push_back({test_map_name(test.name), "p-value of the trend by the test " + std::string(test.name)});
     }
     return all;
   }();

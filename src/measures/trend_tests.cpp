@@ -71,4 +71,10 @@ std::vector<std::string> trend_test_names() {
   return names;
 }
 
+std::string test_map_name(std::string_view test) {
+  std::string name = "trend_p_" + std::string(test);
+  std::ranges::replace(name, '-', '_');
+  return name;
+}
+
 }  // namespace lagscape

@@ -22,5 +22,7 @@ struct TrendTest {
 [[nodiscard]] std::span<const TrendTest> trend_tests();
 [[nodiscard]] const TrendTest* find_trend_test(std::string_view name);
 [[nodiscard]] std::vector<std::string> trend_test_names();
+/// Name of the map of a test's p-values: "trend_p_ols_neff".
+[[nodiscard]] std::string test_map_name(std::string_view test);
 
 }  // namespace lagscape
