@@ -14,7 +14,7 @@ std::unique_ptr<TileSource> open_archive(const InputRequest& request, const Log&
     if (request.sites)
       throw Error(ErrorKind::job, "[input] sites names coordinates for a CSV panel, but the input is netCDF", "",
                   "leave out sites");
-    return open_nc_archive(request, log);
+    return open_nc_archive(request);
   }
   if (panels != std::ssize(request.files))
     throw Error(ErrorKind::job, "the input mixes CSV panels and netCDF files", "[input] files",

@@ -13,6 +13,7 @@ namespace {
 
 constexpr double kNaN = std::numeric_limits<double>::quiet_NaN();
 constexpr std::size_t kPiece = 256;  // cells decoded at a time: 2 KiB of doubles stay in the first cache level
+constexpr std::size_t kAhead = 4;    // steps fetched before they are needed
 constexpr std::size_t kAlign = 16;
 
 // Neighbouring cells of one step into their lanes. The lane count that the kernels use is copied as one block of fixed
@@ -67,6 +68,17 @@ const std::byte* ArchiveBand::stored(const Holder& holder, std::size_t cell) con
          (holder.row * cells_.count + cell) * plan_->files[holder.file].rules.bytes();
 }
 
+// Steps lie a whole band apart, too far for the machine to see them coming.
+void ArchiveBand::prefetch(std::size_t step, std::size_t cell, std::size_t count) const {
+  constexpr std::size_t kLine = 64;
+  const std::size_t first = plan_->first_holder[step];
+  if (first == plan_->first_holder[step + 1]) return;
+  const Holder& holder = plan_->holders[first];
+  const std::byte* const from = stored(holder, cell);
+  const std::size_t bytes = count * plan_->files[holder.file].rules.bytes();
+  for (std::size_t at = 0; at < bytes; at += kLine) __builtin_prefetch(from + at);
+}
+
 void ArchiveBand::decode_step(std::size_t step, std::size_t cell, std::size_t count, double* out,
                               ValueCounts& counts) const {
   const std::size_t first = plan_->first_holder[step], end = plan_->first_holder[step + 1];
@@ -100,6 +112,7 @@ void ArchiveBand::gather(std::size_t offset, std::size_t count, std::size_t lane
   for (std::size_t cell = 0; cell < count; cell += kPiece) {
     const std::size_t some = std::min(kPiece, count - cell);
     for (std::size_t t = 0; t < steps; ++t) {
+      if (t + kAhead < steps) prefetch(t + kAhead, offset + cell, some);
       decode_step(t, offset + cell, some, piece, found);
       place(piece, cell, some, lanes, pitch, t, out);
     }

@@ -18,6 +18,7 @@ class ArchiveBand final : public Band {
               ValueCounts& counts) const override;
 
  private:
+  void prefetch(std::size_t step, std::size_t cell, std::size_t count) const;
   void decode_step(std::size_t step, std::size_t cell, std::size_t count, double* out, ValueCounts& counts) const;
   [[nodiscard]] const std::byte* stored(const Holder& holder, std::size_t cell) const;
 

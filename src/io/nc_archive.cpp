@@ -12,7 +12,7 @@
 #include "io/archive_band.h"
 #include "io/archive_plan.h"
 #include "io/mask_file.h"
-#include "io/slab_reader.h"
+#include "io/step_reader.h"
 #include "io/time_decode.h"
 #include "lagscape/base/text.h"
 
@@ -175,38 +175,6 @@ void place_steps(const JoinedAxis& joined, DuplicateRule rule, ArchivePlan& plan
   for (const Kept& one : kept) plan.holders[next[one.step]++] = one.holder;
 }
 
-/// Decodes whole maps of single stored steps, keeping one file open.
-class StepReader {
- public:
-  explicit StepReader(const ArchivePlan& plan) : plan_(plan) {}
-
-  const std::vector<double>& read(std::size_t f, std::size_t step) {
-    const ArchiveFile& part = plan_.files[f];
-    if (!file_ || open_ != f) {
-      file_.reset();
-      file_.emplace(NcFile::open(part.path));
-      layout_ = reopened(*file_, part.layout);
-      open_ = f;
-    }
-    const std::size_t cells = plan_.panel.geometry.cells();
-    stored_.resize(cells * part.rules.bytes());
-    values_.resize(cells);
-    read_stored(*file_, layout_, plan_.map, plan_.panel.geometry.cols, {0, cells}, step, 1, part.rules.bytes(),
-                stored_.data());
-    ValueCounts counts;
-    part.rules.decode(stored_.data(), cells, values_.data(), counts);
-    return values_;
-  }
-
- private:
-  const ArchivePlan& plan_;
-  std::optional<NcFile> file_;
-  std::size_t open_ = 0;
-  VariableLayout layout_;
-  std::vector<std::byte> stored_;
-  std::vector<double> values_;
-};
-
 [[noreturn]] void refuse_overlap(const ArchivePlan& plan, const Overlap& overlap, std::size_t cell, double a,
                                  double b) {
   const std::string first = plan.files[overlap.file_a].path, other = plan.files[overlap.file_b].path;
@@ -224,9 +192,11 @@ void compare_overlaps(const ArchivePlan& plan, std::vector<Overlap> overlaps) {
     return std::tuple(a.file_a, a.file_b, a.axis_step) < std::tuple(b.file_a, b.file_b, b.axis_step);
   });
   StepReader first(plan), other(plan);
+  const CellRange all{0, plan.panel.geometry.cells()};
+  ValueCounts ignored;
   for (const Overlap& one : overlaps) {
-    const std::vector<double>& a = first.read(one.file_a, one.step_a);
-    const std::vector<double>& b = other.read(one.file_b, one.step_b);
+    const std::vector<double>& a = first.read(one.file_a, one.step_a, all, ignored);
+    const std::vector<double>& b = other.read(one.file_b, one.step_b, all, ignored);
     for (std::size_t cell = 0; cell < a.size(); ++cell) {
       const bool same = a[cell] == b[cell] || (std::isnan(a[cell]) && std::isnan(b[cell]));
       if (!same) refuse_overlap(plan, one, cell, a[cell], b[cell]);
@@ -354,9 +324,10 @@ VariableLayout reopened(const NcFile& file, const VariableLayout& layout) {
   return again;
 }
 
-std::unique_ptr<TileSource> open_nc_archive(const InputRequest& request,
-                                            const Log& /*log: what there is to say stands in Panel::notes*/) {
-  return std::make_unique<ArchiveSource>(ArchiveOpener(request).open());
+std::shared_ptr<const ArchivePlan> plan_archive(const InputRequest& request) { return ArchiveOpener(request).open(); }
+
+std::unique_ptr<TileSource> open_nc_archive(const InputRequest& request) {
+  return std::make_unique<ArchiveSource>(plan_archive(request));
 }
 
 }  // namespace lagscape
