@@ -26,29 +26,29 @@ int creation_mode(FileFormat format) {
 
 }  // namespace
 
-NcFile NcFile::create(const std::string& path, FileFormat format) {
+NcWriter NcWriter::create(const std::string& path, FileFormat format) {
   int id = -1;
   const int status = nc_create(path.c_str(), creation_mode(format), &id);
-  NcFile file(path, id);
+  NcWriter file(path, id);
   file.check(status);
   return file;
 }
 
-NcFile NcFile::reopen(const std::string& path) {
+NcWriter NcWriter::reopen(const std::string& path) {
   int id = -1;
   const int status = nc_open(path.c_str(), NC_WRITE, &id);
-  NcFile file(path, id);
+  NcWriter file(path, id);
   file.check(status);
   return file;
 }
 
-NcFile::~NcFile() {
+NcWriter::~NcWriter() {
   if (id_ >= 0) nc_close(id_);  // only left open when an error is on its way
 }
 
-NcFile::NcFile(NcFile&& other) noexcept : path_(std::move(other.path_)), id_(std::exchange(other.id_, -1)) {}
+NcWriter::NcWriter(NcWriter&& other) noexcept : path_(std::move(other.path_)), id_(std::exchange(other.id_, -1)) {}
 
-void NcFile::check(int status, int variable) const {
+void NcWriter::check(int status, int variable) const {
   if (status == NC_NOERR) return;
   std::array<char, NC_MAX_NAME + 1> name{};
   const bool named = variable >= 0 && nc_inq_varname(id_, variable, name.data()) == NC_NOERR;
@@ -58,31 +58,31 @@ void NcFile::check(int status, int variable) const {
               "so large a file");
 }
 
-int NcFile::dimension(const std::string& name, std::size_t length) {
+int NcWriter::dimension(const std::string& name, std::size_t length) {
   int dimension = -1;
   check(nc_def_dim(id_, name.c_str(), length == 0 ? NC_UNLIMITED : length, &dimension));
   return dimension;
 }
 
-int NcFile::variable(const std::string& name, int nc_type, const std::vector<int>& dimensions) {
+int NcWriter::variable(const std::string& name, int nc_type, const std::vector<int>& dimensions) {
   int variable = -1;
   check(nc_def_var(id_, name.c_str(), nc_type, static_cast<int>(dimensions.size()), dimensions.data(), &variable));
   return variable;
 }
 
-void NcFile::storage(int variable, const std::vector<std::size_t>& chunks, int deflate) {
+void NcWriter::storage(int variable, const std::vector<std::size_t>& chunks, int deflate) {
   if (chunks.empty()) return check(nc_def_var_chunking(id_, variable, NC_CONTIGUOUS, nullptr), variable);
   check(nc_def_var_chunking(id_, variable, NC_CHUNKED, chunks.data()), variable);
   if (deflate > 0) check(nc_def_var_deflate(id_, variable, 1, 1, deflate), variable);
 }
 
-void NcFile::fill(int variable, double value) {
+void NcWriter::fill(int variable, double value) {
   nc_type type = NC_NAT;
   check(nc_inq_vartype(id_, variable, &type), variable);
   check(nc_put_att_double(id_, variable, "_FillValue", type, 1, &value), variable);
 }
 
-void NcFile::attributes(int variable, const Attributes& attributes) {
+void NcWriter::attributes(int variable, const Attributes& attributes) {
   const int where = variable < 0 ? NC_GLOBAL : variable;
   for (const auto& [name, value] : attributes) {
     if (const auto* text = std::get_if<std::string>(&value)) {
@@ -97,37 +97,37 @@ void NcFile::attributes(int variable, const Attributes& attributes) {
   }
 }
 
-void NcFile::end_definition() { check(nc_enddef(id_)); }
+void NcWriter::end_definition() { check(nc_enddef(id_)); }
 
-int NcFile::find(const std::string& variable) {
+int NcWriter::find(const std::string& variable) {
   int found = -1;
   check(nc_inq_varid(id_, variable.c_str(), &found));
   return found;
 }
 
-void NcFile::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
+void NcWriter::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
                  const double* values) {
   check(nc_put_vara_double(id_, variable, start.data(), count.data(), values), variable);
 }
-void NcFile::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
+void NcWriter::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
                  const float* values) {
   check(nc_put_vara_float(id_, variable, start.data(), count.data(), values), variable);
 }
-void NcFile::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
+void NcWriter::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
                  const short* values) {
   check(nc_put_vara_short(id_, variable, start.data(), count.data(), values), variable);
 }
-void NcFile::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
+void NcWriter::put(int variable, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
                  const int* values) {
   check(nc_put_vara_int(id_, variable, start.data(), count.data(), values), variable);
 }
 
-void NcFile::put_texts(int variable, const std::vector<std::string>& texts, std::size_t width) {
+void NcWriter::put_texts(int variable, const std::vector<std::string>& texts, std::size_t width) {
   std::string padded;
   for (const std::string& text : texts) padded += text + std::string(width - text.size(), '\0');
   check(nc_put_var_text(id_, variable, padded.data()), variable);
 }
 
-void NcFile::close() { check(nc_close(std::exchange(id_, -1))); }
+void NcWriter::close() { check(nc_close(std::exchange(id_, -1))); }
 
 }  // namespace lagscape

@@ -11,14 +11,14 @@ namespace lagscape {
 
 /// A NetCDF file being written; closed by close(), or silently when destroyed. Every failure is an Error{output} that
 /// names the file and the variable.
-class NcFile {
+class NcWriter {
  public:
-  [[nodiscard]] static NcFile create(const std::string& path, FileFormat format);
+  [[nodiscard]] static NcWriter create(const std::string& path, FileFormat format);
   /// Opens a file made by create() to write more values.
-  [[nodiscard]] static NcFile reopen(const std::string& path);
-  ~NcFile();
-  NcFile(NcFile&& other) noexcept;
-  NcFile& operator=(NcFile&&) = delete;
+  [[nodiscard]] static NcWriter reopen(const std::string& path);
+  ~NcWriter();
+  NcWriter(NcWriter&& other) noexcept;
+  NcWriter& operator=(NcWriter&&) = delete;
 
   /// length 0: unlimited.
   int dimension(const std::string& name, std::size_t length);
@@ -41,7 +41,7 @@ class NcFile {
   void close();
 
  private:
-  NcFile(std::string path, int id) : path_(std::move(path)), id_(id) {}
+  NcWriter(std::string path, int id) : path_(std::move(path)), id_(id) {}
   void check(int status, int variable = -1) const;
 
   std::string path_;

@@ -49,7 +49,7 @@ class NetcdfWriter {
       std::vector<Generator> generators;
       for (std::size_t v = 0; v < recipe_.variables.size(); ++v) generators.emplace_back(recipe_, v, first, count);
       for (const TimePiece& piece : pieces) {
-        NcFile file = first == 0 ? define(piece) : NcFile::reopen(files_.part(piece.stem + ".nc"));
+        NcWriter file = first == 0 ? define(piece) : NcWriter::reopen(files_.part(piece.stem + ".nc"));
         write_piece(file, piece, first, count, generators);
         file.close();
       }
@@ -73,16 +73,16 @@ class NetcdfWriter {
     const std::size_t unit = geometry.is_sites() ? chunks[2] : chunks[1] * geometry.cols;
     return unit * std::max<std::size_t>(1, kBlockValues / recipe_.axis.size() / unit);
   }
-  [[nodiscard]] NcFile define(const TimePiece& piece) const;
-  void define_variable(NcFile& file, const ForgedVariable& variable, int time, const Space& space,
+  [[nodiscard]] NcWriter define(const TimePiece& piece) const;
+  void define_variable(NcWriter& file, const ForgedVariable& variable, int time, const Space& space,
                        std::size_t steps) const;
-  void write_times(NcFile& file, int time, const TimePiece& piece) const;
-  void write_piece(NcFile& file, const TimePiece& piece, std::size_t first, std::size_t count,
+  void write_times(NcWriter& file, int time, const TimePiece& piece) const;
+  void write_piece(NcWriter& file, const TimePiece& piece, std::size_t first, std::size_t count,
                    std::vector<Generator>& generators);
-  void put(NcFile& file, const ForgedVariable& variable, std::size_t step, std::size_t steps, std::size_t first,
+  void put(NcWriter& file, const ForgedVariable& variable, std::size_t step, std::size_t steps, std::size_t first,
            std::size_t count);
   template <class Stored>
-  void put_as(NcFile& file, const ForgedVariable& variable, const std::vector<std::size_t>& start,
+  void put_as(NcWriter& file, const ForgedVariable& variable, const std::vector<std::size_t>& start,
               const std::vector<std::size_t>& size, std::size_t steps, std::size_t count);
 
   const Recipe& recipe_;
@@ -91,8 +91,8 @@ class NetcdfWriter {
   std::vector<double> block_;  ///< steps of one block, time-major
 };
 
-NcFile NetcdfWriter::define(const TimePiece& piece) const {
-  NcFile file = NcFile::create(files_.part(piece.stem + ".nc"), format_);
+NcWriter NetcdfWriter::define(const TimePiece& piece) const {
+  NcWriter file = NcWriter::create(files_.part(piece.stem + ".nc"), format_);
   const bool unlimited = recipe_.output.unlimited && recipe_.output.layout != FileLayout::contiguous && !time_last();
   const int time_dimension = file.dimension("time", unlimited ? 0 : piece.steps);
   const Space space = define_space(file, recipe_.geometry);
@@ -113,7 +113,7 @@ NcFile NetcdfWriter::define(const TimePiece& piece) const {
   return file;
 }
 
-void NetcdfWriter::define_variable(NcFile& file, const ForgedVariable& variable, int time, const Space& space,
+void NetcdfWriter::define_variable(NcWriter& file, const ForgedVariable& variable, int time, const Space& space,
                                    std::size_t steps) const {
   std::vector<int> dimensions = space.dimensions;
   dimensions.insert(time_last() ? dimensions.end() : dimensions.begin(), time);
@@ -136,7 +136,7 @@ void NetcdfWriter::define_variable(NcFile& file, const ForgedVariable& variable,
   file.storage(id, sizes, recipe_.output.deflate);
 }
 
-void NetcdfWriter::write_times(NcFile& file, int time, const TimePiece& piece) const {
+void NetcdfWriter::write_times(NcWriter& file, int time, const TimePiece& piece) const {
   std::vector<double> values;
   for (std::size_t t = piece.first; t < piece.first + piece.steps; ++t) {
     values.push_back(static_cast<double>(recipe_.axis.time(t) - recipe_.time_epoch) /
@@ -145,7 +145,7 @@ void NetcdfWriter::write_times(NcFile& file, int time, const TimePiece& piece) c
   file.put(time, {0}, {piece.steps}, values.data());
 }
 
-void NetcdfWriter::write_piece(NcFile& file, const TimePiece& piece, std::size_t first, std::size_t count,
+void NetcdfWriter::write_piece(NcWriter& file, const TimePiece& piece, std::size_t first, std::size_t count,
                                std::vector<Generator>& generators) {
   const std::size_t unit = chunk_sizes(recipe_, piece.steps)[0];
   const std::size_t block_steps = unit * std::max<std::size_t>(1, kBlockValues / count / unit);
@@ -159,7 +159,7 @@ void NetcdfWriter::write_piece(NcFile& file, const TimePiece& piece, std::size_t
   }
 }
 
-void NetcdfWriter::put(NcFile& file, const ForgedVariable& variable, std::size_t step, std::size_t steps,
+void NetcdfWriter::put(NcWriter& file, const ForgedVariable& variable, std::size_t step, std::size_t steps,
                        std::size_t first, std::size_t count) {
   const Geometry& geometry = recipe_.geometry;
   std::vector<std::size_t> start{step, first / geometry.cols, 0}, size{steps, count / geometry.cols, geometry.cols};
@@ -180,7 +180,7 @@ void NetcdfWriter::put(NcFile& file, const ForgedVariable& variable, std::size_t
 }
 
 template <class Stored>
-void NetcdfWriter::put_as(NcFile& file, const ForgedVariable& variable, const std::vector<std::size_t>& start,
+void NetcdfWriter::put_as(NcWriter& file, const ForgedVariable& variable, const std::vector<std::size_t>& start,
                           const std::vector<std::size_t>& size, std::size_t steps, std::size_t count) {
   std::vector<Stored> raw(block_.size());
   for (std::size_t t = 0; t < steps; ++t) {

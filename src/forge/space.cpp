@@ -16,7 +16,7 @@ std::size_t longest(const std::vector<std::string>& texts) {
   return width;
 }
 
-Space define_sites(NcFile& file, const Geometry& geometry) {
+Space define_sites(NcWriter& file, const Geometry& geometry) {
   Space space;
   space.dimensions = {file.dimension("station", geometry.cols)};
   const int width = file.dimension("name_length", longest(geometry.site_names));
@@ -37,7 +37,7 @@ Space define_sites(NcFile& file, const Geometry& geometry) {
   return space;
 }
 
-int define_axis(NcFile& file, const SpaceAxis& axis, int dimension, const char* letter) {
+int define_axis(NcWriter& file, const SpaceAxis& axis, int dimension, const char* letter) {
   const int variable = file.variable(axis.name, NC_DOUBLE, {dimension});
   file.attributes(variable, {{"standard_name", axis.standard_name}, {"units", axis.units}, {"axis", letter}});
   return variable;
@@ -45,7 +45,7 @@ int define_axis(NcFile& file, const SpaceAxis& axis, int dimension, const char* 
 
 }  // namespace
 
-Space define_space(NcFile& file, const Geometry& geometry) {
+Space define_space(NcWriter& file, const Geometry& geometry) {
   if (geometry.is_sites()) return define_sites(file, geometry);
   Space space;
   space.dimensions = {file.dimension(geometry.y.name, geometry.rows), file.dimension(geometry.x.name, geometry.cols)};
@@ -67,7 +67,7 @@ Space define_space(NcFile& file, const Geometry& geometry) {
   return space;
 }
 
-void write_space(NcFile& file, const Geometry& geometry, const Space& space) {
+void write_space(NcWriter& file, const Geometry& geometry, const Space& space) {
   if (geometry.is_sites()) {
     file.put_texts(space.coordinates[0], geometry.site_names, longest(geometry.site_names));
     file.put(space.coordinates[1], {0}, {geometry.cols}, geometry.lat.data());

@@ -65,7 +65,7 @@ class TruthFile {
   TruthFile(const Recipe& recipe, std::size_t variable, const std::string& path)
       : recipe_(recipe),
         variable_(recipe.variables[variable]),
-        file_(NcFile::create(path, FileFormat::netcdf4)),
+        file_(NcWriter::create(path, FileFormat::netcdf4)),
         space_(define_space(file_, recipe.geometry)) {}
 
   void write(const std::vector<std::size_t>& missing) {
@@ -149,7 +149,7 @@ class TruthFile {
 
   const Recipe& recipe_;
   const ForgedVariable& variable_;
-  NcFile file_;
+  NcWriter file_;
   Space space_;
   int order_ = -1, coefficients_ = -1;
 };
