@@ -2,6 +2,7 @@
 
 The tools are the outside judge: gdalinfo and ogrinfo for reference system, place, missing value and names, gdallocationinfo,
 gdalwarp and ogr2ogr for values. Each check raises AssertionError with the words of the difference."""
+import csv
 import json
 import math
 import os
@@ -22,8 +23,9 @@ if missing:
 NODATA = {"f4": math.nan, "f8": math.nan, "i4": -1, "i2": -1, "i1": 127}
 
 
-def run(*command):
-    done = subprocess.run(command, capture_output=True, text=True)
+def run(*command, text=None):
+    """Standard output of a command that must succeed; text: its standard input."""
+    done = subprocess.run(command, capture_output=True, text=True, input=text)
     assert done.returncode == 0, f"{' '.join(command)} gave {done.returncode}: {done.stdout}{done.stderr}"
     return done.stdout
 
@@ -95,17 +97,19 @@ def check_raster(path, system, origin, step, places):
         assert all(same(a, b, 1e-9) for a, b in zip(transform, wanted)), f"{name}: {transform}, not {wanted}"
         check_system(name, info, system)
         check_bands(data, name, info)
-        for (x, y), (row, col) in places:
-            check_value(path, data, name, x, y, row, col)
+        check_values(path, data, name, places)
 
 
-def check_value(path, data, name, x, y, row, col):
-    """gdallocationinfo at a place gives the value of the cell there, in every layer."""
-    found = [float(v) for v in run("gdallocationinfo", "-valonly", "-geoloc", source(path, name), str(x), str(y)).split()]
-    wanted = numpy.atleast_1d(data.variables[name][..., row, col]).astype(float)
-    assert len(found) == len(wanted), f"{name} at {x} {y}: {len(found)} values for {len(wanted)}"
-    for layer, (a, b) in enumerate(zip(found, wanted)):
-        assert same(a, b), f"{name} at {x} {y}, layer {layer}: GDAL gives {a}, the cell at row {row}, col {col} has {b}"
+def check_values(path, data, name, places):
+    """gdallocationinfo at each place gives the values of the cell there, in every layer."""
+    points = "".join(f"{x} {y}\n" for (x, y), _ in places)
+    found = [float(v) for v in run("gdallocationinfo", "-valonly", "-geoloc", source(path, name), text=points).split()]
+    wanted = [(place, cell, layer, float(value)) for place, cell in places
+              for layer, value in enumerate(numpy.atleast_1d(data.variables[name][..., cell[0], cell[1]]))]
+    assert len(found) == len(wanted), f"{name}: {len(found)} values for {len(wanted)}"
+    for value, (place, cell, layer, expected) in zip(found, wanted):
+        where = f"{name} at {place}, layer {layer}"
+        assert same(value, expected), f"{where}: GDAL gives {value}, the cell at row, col {cell} has {expected}"
 
 
 def check_warped(path, name, degrees, cells):
@@ -152,7 +156,8 @@ def check_sites(path):
     for site, feature in enumerate(features):
         assert feature["properties"]["station_id"] == str(names[site]).rstrip("\0 ")
         place = feature["geometry"]["coordinates"][:2]
-        assert same(place[0], float(data["lon"][site])) and same(place[1], float(data["lat"][site])), f"site {site} at {place}"
+        wanted = [float(data["lon"][site]), float(data["lat"][site])]
+        assert same(place[0], wanted[0]) and same(place[1], wanted[1]), f"site {site} at {place}, not {wanted}"
         for name in maps:
             wanted, fill = float(data.variables[name][site]), float(data.variables[name].getncattr("_FillValue"))
             found = feature["properties"].get(name)  # GDAL leaves out what is missing
@@ -164,9 +169,9 @@ def check_sites(path):
 
 
 def check_table(path, data, names, maps):
-    table = run("ogrinfo", "-q", "-al", "-oo", "AUTODETECT_TYPE=NO", "-oo", "X_POSSIBLE_NAMES=lon", "-oo", "Y_POSSIBLE_NAMES=lat", path)
+    """The table gives points too, and the same values to the last digit."""
+    table = run("ogrinfo", "-q", "-al", "-oo", "X_POSSIBLE_NAMES=lon", "-oo", "Y_POSSIBLE_NAMES=lat", path)
     assert "POINT (" in table, f"the table gives no points: {table}"
-    import csv
     with open(path, newline="", encoding="utf-8") as file:
         rows = list(csv.DictReader(file))
     assert [row["station_id"] for row in rows] == [str(name).rstrip("\0 ") for name in names]
@@ -177,4 +182,5 @@ def check_table(path, data, names, maps):
                 continue  # dates in the table
             wanted, fill = float(variable[site]), float(variable.getncattr("_FillValue"))
             gone = math.isnan(wanted) or wanted == fill
-            assert row[name] == "" if gone else variable.dtype.type(row[name]) == variable[site], f"{name}: {row[name]}, not {wanted}"
+            right = row[name] == "" if gone else variable.dtype.type(row[name]) == variable[site]
+            assert right, f"{name} of {row['station_id']}: {row[name]}, not {wanted}"
