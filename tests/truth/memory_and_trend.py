@@ -38,15 +38,17 @@ def read_maps(path, *names):
         return [np.ma.filled(file.variables[name][:].astype(float), np.nan) for name in names]
 
 
+def run(command, file, *options):
+    subprocess.run([lagscape, command, os.path.join(here, file), "--quiet", *options], check=True, stdout=subprocess.DEVNULL)
+
+
 def made(case, number):
     """Forges the grid of a case and runs the job on it; the result and the truth."""
     place = os.path.join(folder, f"case_{number}")
     shutil.rmtree(place, ignore_errors=True)
     result = os.path.join(place, "memory.nc")
-    subprocess.run([lagscape, "forge", os.path.join(here, "memory_recipe.toml"), "--quiet", "--set", f"output.folder={place}"] + CASES[case],
-                   check=True, stdout=subprocess.DEVNULL)
-    subprocess.run([lagscape, "run", os.path.join(here, "memory_job.toml"), "--quiet", "--set", f"input.files={place}/known.nc",
-                    "--set", f"output.file={result}"], check=True, stdout=subprocess.DEVNULL)
+    run("forge", "memory_recipe.toml", "--set", f"output.folder={place}", *CASES[case])
+    run("run", "memory_job.toml", "--set", f"input.files={place}/known.nc", "--set", f"output.file={result}")
     return result, os.path.join(place, "truth_known.nc")
 
 
@@ -69,7 +71,8 @@ def check_kind(case, kind, truth, tau, low, high, p, slope):
         wrong.append("alarms")
     if abs(slope_error) > 4:
         wrong.append("mean slope is not 0")
-    print(f"{case:15} {kind:13} {cells:6d} {truth:8.3f} {np.nanmedian(tau):8.3f} {ratio:6.3f} {covered:8.3f} {alarms:7.3f}  {', '.join(wrong)}")
+    print(f"{case:15} {kind:13} {cells:6d} {truth:8.3f} {np.nanmedian(tau):8.3f} {ratio:6.3f} {covered:8.3f} {alarms:7.3f}",
+          ", ".join(wrong))
     failures.extend(f"{case}, {kind}: {text}" for text in wrong)
 
 

@@ -39,7 +39,8 @@ def decoded(variable):
 
 def compare_netcdf(name, old_path, new_path):
     with netCDF4.Dataset(old_path) as old, netCDF4.Dataset(new_path) as new:
-        check(list(old.variables) == list(new.variables), f"{name}: variables {list(new.variables)}, committed {list(old.variables)}")
+        names, again = list(old.variables), list(new.variables)
+        check(names == again, f"{name}: variables {again}, committed {names}")
         for key, variable in old.variables.items():
             again = new.variables.get(key)
             if again is None:
