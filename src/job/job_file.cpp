@@ -143,7 +143,8 @@ void JobReader::refuse_unknown() {
   for (const std::string_view later : later_options()) {
     const std::string key(later);
     known.push_back(key);
-    if (toml_.has(key)) toml_.problem(key, fmt::format("{}: not available yet in this version", name_of(key)));
+    if (toml_.has(key))
+      toml_.problem(key, fmt::format("{}: a later version will read this key; take it out for now", name_of(key)));
   }
   toml_.refuse_unknown(known);
 }
@@ -376,8 +377,8 @@ void JobReader::read_trend() {
       else if (contains(known, test))
         trend.tests.push_back(test);
       else if (std::find(later.begin(), later.end(), test) != later.end()) {
-        toml_.problem("trend.tests", fmt::format("tests: \"{}\" is not available yet in this version; there are {}",
-                                                 test, join(known, " | ")));
+        toml_.problem("trend.tests", fmt::format("tests: \"{}\" will come with a later version; there are {}", test,
+                                                 join(known, " | ")));
       } else
         refuse("trend.tests", fmt::format("\"{}\"", test), join(known, " | ") + did_you_mean(test, known));
     }

@@ -71,9 +71,13 @@ constexpr std::array kOptions = {
               {1, 12},
               "per year",
               "Number of yearly harmonics when the season is described by harmonics."},
-    JobOption{"prepare.remove", "choice", "linear",
-              "none | mean | linear | quadratic | difference | season-difference | running-mean", kFree, "",
-              "What else is taken out before memory is measured, in one fit with the season."},
+    JobOption{
+        "prepare.remove", "choice", "linear",
+        "none | mean | linear | quadratic | difference | season-difference | running-mean", kFree, "",
+        "What else is taken out before memory is measured. mean, linear, quadratic: fitted together with the season; "
+        "difference, season-difference: the change from the step, or the same season, before; running-mean: slow "
+        "change, "
+        "by a centred mean over window."},
     JobOption{"prepare.window",
               "duration or whole number",
               "",

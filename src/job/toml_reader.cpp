@@ -117,9 +117,10 @@ toml::table parse_toml(const std::string& text, const std::string& name) {
     return toml::parse(text, name);
   } catch (const toml::parse_error& error) {
     const toml::source_position at = error.source().begin;
-    throw Error(ErrorKind::job, fmt::format("not valid TOML: {}", error.description()),
-                fmt::format("{}:{}:{}", name, at.line, at.column),
-                "texts need quotes, lists square brackets, and each key may stand only once in its table");
+    throw Error(
+        ErrorKind::job, fmt::format("not valid TOML: {}", error.description()),
+        fmt::format("{}:{}:{}", name, at.line, at.column),
+        "texts need a quote at either end, lists square brackets, and each key may stand only once in its table");
   }
 }
 
