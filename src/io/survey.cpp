@@ -235,7 +235,7 @@ void examine(const NcFile& file, SurveyedVariable& variable, SurveyReport& repor
   } catch (const Error& problem) {
     variable.usable = false;
     variable.why_not = problem.problem();
-    if (variable.to_do.empty()) variable.to_do = problem.fix();
+    variable.to_do = problem.fix();
   }
 }
 
