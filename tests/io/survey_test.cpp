@@ -1,0 +1,113 @@
+#include "lagscape/io/survey.h"
+
+#include <algorithm>
+#include <fstream>
+
+#include "io/nc_sample.h"
+
+namespace lagscape {
+namespace {
+
+using namespace test;
+
+struct Axes {
+  int time, lat, lon;
+};
+
+Axes grid_axes(NcSample& s, std::size_t steps, const std::string& time_units) {
+  const Axes axes{s.dim("time", steps), s.dim("lat", 2), s.dim("lon", 3)};
+  s.coordinate("time", {axes.time}, range(0, 1, steps), time_units);
+  s.coordinate("lat", {axes.lat}, {1, 2}, "degrees_north");
+  s.coordinate("lon", {axes.lon}, {1, 2, 3}, "degrees_east");
+  return axes;
+}
+
+const SurveyedVariable& named(const SurveyReport& report, const std::string& name) {
+  const auto found =
+      std::find_if(report.variables.begin(), report.variables.end(), [&](const auto& v) { return v.name == name; });
+  if (found == report.variables.end()) throw std::runtime_error("no variable " + name);
+  return *found;
+}
+
+bool quirk(const SurveyReport& report, const std::string& part) {
+  return std::any_of(report.quirks.begin(), report.quirks.end(), [&](const std::string& q) { return has(q, part); });
+}
+
+TEST(Survey, SaysWhatCanBeAnalysedAndWhyTheRestCannot) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const auto [t, y, x] = grid_axes(s, 4, "days since 2001-01-01");
+  const int level = s.dim("level", 2);
+  s.coordinate("level", {level}, {850, 500}, "hPa");
+  const int wetness = s.var("wetness", NC_FLOAT, {t, y, x});
+  s.text(wetness, "units", "1");
+  std::vector<double> values = range(0, 1, 24);
+  for (const std::size_t i : {0U, 6U, 12U, 18U}) values[i] = NC_FILL_FLOAT;  // one cell of six
+  s.put(wetness, values);
+  s.put(s.var("wind", NC_FLOAT, {t, level, y, x}), range(0, 1, 48));
+  s.put(s.var("height", NC_FLOAT, {y, x}), range(0, 1, 6));
+  const SurveyReport report = survey_files({s.close()}, "", {});
+
+  ASSERT_EQ(report.kinds, (std::vector<std::string>{"netCDF-4"}));
+  ASSERT_EQ(report.variables.size(), 3U);  // coordinates are no data
+  const SurveyedVariable& first = named(report, "wetness");
+  EXPECT_TRUE(first.usable) << first.why_not;
+  EXPECT_EQ(first.panel.axis.size(), 4U);
+  EXPECT_EQ(first.panel.geometry.kind, GeometryKind::latlon);
+  EXPECT_DOUBLE_EQ(first.missing_share, 1.0 / 6);
+  EXPECT_EQ(first.sampled_steps, 4U);
+  const SurveyedVariable& wind = named(report, "wind");
+  EXPECT_TRUE(wind.usable) << wind.why_not;
+  EXPECT_EQ(wind.select, (std::vector<std::pair<std::string, double>>{{"level", 850}}));
+  EXPECT_TRUE(has(wind.to_do, "select = { level = 850 }") && has(wind.to_do, "850, 500 hPa")) << wind.to_do;
+  EXPECT_FALSE(named(report, "height").usable);
+  EXPECT_TRUE(has(named(report, "height").why_not, "no time axis"));
+  EXPECT_TRUE(quirk(report, "wind: has no unit"));
+}
+
+TEST(Survey, FindsTheDateThatATimeUnitLacks) {
+  const Folder folder;
+  NcSample s(folder / "a.nc", 0);
+  const auto [t, y, x] = grid_axes(s, 3, "hours");
+  int time = -1;
+  ok(nc_inq_varid(s.id(), "time", &time));
+  s.text(time, "long_name", "ANALYSIS time from 20200131");
+  s.put(s.var("pm10", NC_FLOAT, {t, y, x}), range(0, 1, 18));
+  const SurveyReport report = survey_files({s.close()}, "", {});
+  EXPECT_EQ(report.mend_time, "time = { unit = \"hours since 2020-01-31\" }");
+  EXPECT_TRUE(named(report, "pm10").usable);
+  EXPECT_EQ(named(report, "pm10").panel.axis.label(1), "2020-01-31T01:00:00");
+}
+
+TEST(Survey, SaysWhatIsOddAboutValues) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const auto [t, y, x] = grid_axes(s, 2, "days since 2001-01-01");
+  const int odd = s.var("anomaly", NC_SHORT, {t, y, x});
+  s.text(odd, "units", "C");
+  s.numbers(odd, "_FillValue", NC_SHORT, {-999});
+  s.put(odd, {-999, -1016, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
+  const int endless = s.var("ratio", NC_DOUBLE, {t, y, x});
+  s.put(endless, {kInfinity, 1, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11});
+  const int ranged = s.var("share", NC_FLOAT, {t, y, x});
+  s.numbers(ranged, "valid_range", NC_FLOAT, {0, 1});
+  s.put(ranged, range(5, 1, 12));
+  const SurveyReport report = survey_files({s.close()}, "", {});
+  EXPECT_TRUE(quirk(report, "fill value -999 lies among the values"));
+  EXPECT_TRUE(quirk(report, "coulomb"));
+  EXPECT_TRUE(quirk(report, "infinite values"));
+  EXPECT_TRUE(quirk(report, "rejects nearly all values"));
+}
+
+TEST(Survey, CsvPanelIsReadWhole) {
+  const Folder folder;
+  std::ofstream(folder / "gauges.csv") << "# unit: m3 s-1\ndate,Alder,Birch\n2001-01-01,1,\n2001-01-02,2,5\n";
+  const SurveyReport report = survey_files({folder / "gauges.csv"}, "", {});
+  ASSERT_EQ(report.variables.size(), 1U);
+  EXPECT_EQ(report.variables[0].units, "m3 s-1");
+  EXPECT_DOUBLE_EQ(report.variables[0].missing_share, 0.25);
+  EXPECT_TRUE(quirk(report, "no coordinates"));
+}
+
+}  // namespace
+}  // namespace lagscape
