@@ -22,14 +22,22 @@ std::string unit_of(UnitRule rule, const JobPlan& plan) {
   const TimeAxis& axis = plan.panel.axis;
   const std::string plain = dimensionless(input) ? "1" : input;
   switch (rule) {
-    case UnitRule::one: return "1";
-    case UnitRule::none: return "";
-    case UnitRule::input: return plain;
-    case UnitRule::input_difference: return dimensionless(input) ? "1" : difference_unit(input);
-    case UnitRule::input_squared: return squared_unit(difference_unit(input));
-    case UnitRule::input_rate: return rate_unit(difference_unit(input), plan.job.trend.per == RatePer::decade ? "decade" : "year");
-    case UnitRule::lag_time: return axis.lag_unit();
-    case UnitRule::calendar_time: return axis.cf_units();
+    case UnitRule::one:
+      return "1";
+    case UnitRule::none:
+      return "";
+    case UnitRule::input:
+      return plain;
+    case UnitRule::input_difference:
+      return dimensionless(input) ? "1" : difference_unit(input);
+    case UnitRule::input_squared:
+      return squared_unit(difference_unit(input));
+    case UnitRule::input_rate:
+      return rate_unit(difference_unit(input), plan.job.trend.per == RatePer::decade ? "decade" : "year");
+    case UnitRule::lag_time:
+      return axis.lag_unit();
+    case UnitRule::calendar_time:
+      return axis.cf_units();
   }
   return "";
 }
@@ -65,8 +73,8 @@ MapSpec describe_map(const Measure& measure, const JobPlan& plan) {
   return map;
 }
 
-/// Time of history and date_created. Equal work gives equal files, so this is not the clock: it is SOURCE_DATE_EPOCH where set
-/// (reproducible-builds.org), else the time of the newest input file.
+/// Time of history and date_created. Equal work gives equal files, so this is not the clock: it is SOURCE_DATE_EPOCH
+/// where set (reproducible-builds.org), else the time of the newest input file.
 std::string stamp(const JobSpec& job) {
   std::time_t time = 0;
   if (const char* fixed = std::getenv("SOURCE_DATE_EPOCH"); fixed != nullptr && to_number(fixed)) {
@@ -92,7 +100,9 @@ std::string assumptions(const JobSpec& job) {
   } else {
     text += "trend_p_field: no correction for testing many cells was asked for. ";
   }
-  return text + "All limits hold for one cell at a time. A p-value is not the probability that a trend is real, nor does it tell a cause.";
+  return text +
+         "All limits hold for one cell at a time. A p-value is not the probability that a trend is real, nor does it "
+         "tell a cause.";
 }
 
 struct GlobalAttributes {
@@ -137,18 +147,22 @@ MapSet describe_result(const JobPlan& plan, const std::vector<const Measure*>& m
   GlobalAttributes out;
   out.text("Conventions", "CF-1.10, ACDD-1.3");
   out.text("title", job.title.empty() ? fmt::format("Memory and trend of {}", what) : job.title);
-  out.text("summary", fmt::format("Cell by cell statistics of {} ({}), {}, {} to {}: what there is to work with, how long the record "
-                                  "remembers, how many independent values it is worth, and which trends stand once memory and the "
-                                  "number of cells are allowed for.",
-                                  what, panel.variable, step_words(axis.step()), axis.label(0), axis.label(axis.size() - 1)));
+  out.text(
+      "summary",
+      fmt::format("Cell by cell statistics of {} ({}), {}, {} to {}: what there is to work with, how long the record "
+                  "remembers, how many independent values it is worth, and which trends stand once memory and the "
+                  "number of cells are allowed for.",
+                  what, panel.variable, step_words(axis.step()), axis.label(0), axis.label(axis.size() - 1)));
   out.text("keywords", "autocorrelation, decorrelation time, effective sample size, trend, false discovery rate");
-  std::string history = fmt::format("{} lagscape {}: {}", now, LAGSCAPE_VERSION, command.empty() ? "lagscape run" : command);
+  std::string history =
+      fmt::format("{} lagscape {}: {}", now, LAGSCAPE_VERSION, command.empty() ? "lagscape run" : command);
   if (!panel.input_history.empty()) history += "\n" + panel.input_history;
   out.text("history", history);
   out.text("source", fmt::format("variable {} of\n{}", panel.variable, join(panel.sources, "\n")));
   out.text("date_created", now);
-  out.text("lagscape_dates", "history and date_created carry the time of the newest input file (or SOURCE_DATE_EPOCH), not of the "
-                             "run, so that equal work gives equal files");
+  out.text("lagscape_dates",
+           "history and date_created carry the time of the newest input file (or SOURCE_DATE_EPOCH), not of the "
+           "run, so that equal work gives equal files");
   out.text("processing_level", "statistics over time of the source variable");
   add_extent(out, panel.geometry);
   out.text("time_coverage_start", axis.label(0));
@@ -163,14 +177,16 @@ MapSet describe_result(const JobPlan& plan, const std::vector<const Measure*>& m
   out.text("lagscape_job", job_text(job));
   std::string settings;
   for (const EffectiveSetting& setting : plan.settings) {
-    settings += fmt::format("{} = {}{}\n", setting.key, setting.value, setting.reason.empty() ? "" : fmt::format(" ({})", setting.reason));
+    settings += fmt::format("{} = {}{}\n", setting.key, setting.value,
+                            setting.reason.empty() ? "" : fmt::format(" ({})", setting.reason));
   }
   out.text("lagscape_settings", std::string(trim(settings)));
   out.text("lagscape_trend_test", fmt::format("{}: {} [{}]", test.name, test.summary, test.source));
   out.text("lagscape_assumptions", assumptions(job));
-  out.text("lagscape_cautions", "Maps of significance steer decisions. Read status first; a trend not established is not a trend "
-                                "absent (see detectable_trend). Results of the field step depend on the domain chosen. Where people "
-                                "could be hurt, leave the decision to qualified practice.");
+  out.text("lagscape_cautions",
+           "Maps of significance steer decisions. Read status first; a trend not established is not a trend "
+           "absent (see detectable_trend). Results of the field step depend on the domain chosen. Where people "
+           "could be hurt, leave the decision to qualified practice.");
   out.text("lagscape_random_seeds", "none: nothing in this result is random");
   out.text("lagscape_notes", join(plan.notes, "\n"));
   for (const Attribute& attribute : panel.input_attributes) out.list.push_back(attribute);
@@ -185,14 +201,15 @@ Attributes closing_attributes(const RunReport& report) {
   return {
       {"lagscape_cells_by_status", join(counts, "; ")},
       {"lagscape_values_set_aside",
-       fmt::format("missing: {}; infinite: {}; out of range: {}; missing by the job: {}; in seasons with a single value: {}",
-                   report.values.fill, report.values.infinite, report.values.out_of_range, report.values.job_missing,
-                   report.values_in_short_seasons)},
-      {"lagscape_trend_counts",
-       fmt::format("tested: {}; p <= alpha as if independent: {}; p <= alpha by {}: {}; standing after field control: {} ({} rising, "
-                   "{} falling); false ones among them that the rate allows: {}",
-                   trend.tested, trend.independent, trend.test, trend.local, trend.standing, trend.rising, trend.falling,
-                   human_number(trend.expected_false))},
+       fmt::format(
+           "missing: {}; infinite: {}; out of range: {}; missing by the job: {}; in seasons with a single value: {}",
+           report.values.fill, report.values.infinite, report.values.out_of_range, report.values.job_missing,
+           report.values_in_short_seasons)},
+      {"lagscape_trend_counts", fmt::format("tested: {}; p <= alpha as if independent: {}; p <= alpha by {}: {}; "
+                                            "standing after field control: {} ({} rising, "
+                                            "{} falling); false ones among them that the rate allows: {}",
+                                            trend.tested, trend.independent, trend.test, trend.local, trend.standing,
+                                            trend.rising, trend.falling, human_number(trend.expected_false))},
   };
 }
 

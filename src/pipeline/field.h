@@ -19,8 +19,8 @@ struct FieldResult {
   RunReport::TrendCounts counts;
 };
 
-/// Testing all cells together: false discovery control over the cells that were tested (NaN is not counted). A trend stands if
-/// it passes its own cell's level and the adjusted p passes the rate.
+/// Testing all cells together: false discovery control over the cells that were tested (NaN is not counted). A trend
+/// stands if it passes its own cell's level and the adjusted p passes the rate.
 [[nodiscard]] FieldResult field_step(const FieldInput& input, const JobSpec& job);
 
 }  // namespace lagscape

@@ -37,7 +37,9 @@ InputRequest request_of(const JobSpec& job, const std::string& variable) {
 
 /// The maps a job asks for, in the order of the catalogue, then its cubes.
 std::vector<const Measure*> chosen_measures(const JobSpec& job) {
-  const auto named = [](const std::vector<std::string>& words, std::string_view word) { return std::ranges::find(words, word) != words.end(); };
+  const auto named = [](const std::vector<std::string>& words, std::string_view word) {
+    return std::ranges::find(words, word) != words.end();
+  };
   std::vector<const Measure*> chosen;
   for (const Measure& measure : measure_catalog()) {
     if (measure.axis != LayerAxis::none) {
@@ -45,9 +47,10 @@ std::vector<const Measure*> chosen_measures(const JobSpec& job) {
       continue;
     }
     const bool needs_target = measure.name == "years_to_detect" && !job.trend.target;
-    const bool wanted = named(job.output.maps, measure.name) ||
-                        (!needs_target && (named(job.output.maps, "all") || named(job.output.maps, group_name(measure.group)) ||
-                                           (measure.standard && named(job.output.maps, "standard"))));
+    const bool wanted =
+        named(job.output.maps, measure.name) ||
+        (!needs_target && (named(job.output.maps, "all") || named(job.output.maps, group_name(measure.group)) ||
+                           (measure.standard && named(job.output.maps, "standard"))));
     // Further tests of the job show their p-values beside the first one's.
     const bool further_test = std::any_of(job.trend.tests.begin() + 1, job.trend.tests.end(),
                                           [&](const std::string& test) { return measure.name == test_map_name(test); });
@@ -87,17 +90,20 @@ void cut_into_bands(PreparedJob& job, const RunOptions& options) {
   const Geometry& geometry = plan.panel.geometry;
   const std::size_t unit = geometry.is_sites() ? 1 : geometry.cols;  // a band is whole rows, or any run of sites
   const std::size_t units = geometry.is_sites() ? geometry.cols : geometry.rows;
-  const std::size_t cell_bytes = plan.panel.axis.size() * plan.panel.stored_bytes_per_value + layers_of(job.maps) * sizeof(float);
+  const std::size_t cell_bytes =
+      plan.panel.axis.size() * plan.panel.stored_bytes_per_value + layers_of(job.maps) * sizeof(float);
   constexpr std::size_t kFieldBytes = 40;  // kept of every cell until the field step
   constexpr std::size_t kProgramBytes = std::size_t{48} << 20;
-  const std::size_t fixed = kProgramBytes + plan.cells * kFieldBytes + static_cast<std::size_t>(plan.threads) * thread_bytes(plan, job.block_cells);
+  const std::size_t fixed = kProgramBytes + plan.cells * kFieldBytes +
+                            static_cast<std::size_t>(plan.threads) * thread_bytes(plan, job.block_cells);
   plan.budget_bytes = options.memory_bytes > 0 ? options.memory_bytes : free_memory_bytes() / 10 * 6;
   const std::size_t left = plan.budget_bytes > fixed ? plan.budget_bytes - fixed : 0;
   const std::size_t fitting = left / (cell_bytes * unit);
   if (fitting == 0) {
     throw Error(ErrorKind::usage,
-                fmt::format("memory of {} is too little: one {} of cells needs {}", human_bytes(static_cast<double>(plan.budget_bytes)),
-                            geometry.is_sites() ? "site" : "row", human_bytes(static_cast<double>(fixed + cell_bytes * unit))),
+                fmt::format("memory of {} is too little: one {} of cells needs {}",
+                            human_bytes(static_cast<double>(plan.budget_bytes)), geometry.is_sites() ? "site" : "row",
+                            human_bytes(static_cast<double>(fixed + cell_bytes * unit))),
                 plan.job.path, "give more with --memory, or fewer cubes or a shorter period in the job");
   }
   const std::size_t bands = (units + std::min(fitting, units) - 1) / std::min(fitting, units);
@@ -116,7 +122,8 @@ JobSpec job_of_variable(const JobSpec& job, const std::string& variable) {
   JobSpec one = job;
   one.input.variables = {variable};
   constexpr std::string_view kPlace = "{variable}";
-  for (std::size_t at = one.output.file.find(kPlace); at != std::string::npos; at = one.output.file.find(kPlace, at + variable.size())) {
+  for (std::size_t at = one.output.file.find(kPlace); at != std::string::npos;
+       at = one.output.file.find(kPlace, at + variable.size())) {
     one.output.file.replace(at, kPlace.size(), variable);
   }
   return one;
@@ -132,9 +139,10 @@ PreparedJob prepare_job(const JobSpec& whole, const std::string& variable, const
   const TimeAxis& axis = plan.panel.axis;
   const std::size_t fewest = std::max<std::size_t>(job.prepare.min_count, 12);
   if (axis.size() < fewest) {
-    throw Error(ErrorKind::input, fmt::format("the record has {} time steps; at least {} are needed", axis.size(), fewest),
-                fmt::format("variable: {}, {} to {}", variable, axis.label(0), axis.label(axis.size() - 1)),
-                "give more files or a longer period; prepare.min_count sets the smallest number of values (12 at least)");
+    throw Error(
+        ErrorKind::input, fmt::format("the record has {} time steps; at least {} are needed", axis.size(), fewest),
+        fmt::format("variable: {}, {} to {}", variable, axis.label(0), axis.label(axis.size() - 1)),
+        "give more files or a longer period; prepare.min_count sets the smallest number of values (12 at least)");
   }
   prepared.resolved = resolve_settings(job, axis);
   prepared.measures = chosen_measures(job);
@@ -160,7 +168,8 @@ PreparedJob prepare_job(const JobSpec& whole, const std::string& variable, const
 
 std::vector<JobPlan> plan_job(const JobSpec& job, const RunOptions& options, const Log& log) {
   std::vector<JobPlan> plans;
-  for (const std::string& variable : job.input.variables) plans.push_back(prepare_job(job, variable, options, log).plan);
+  for (const std::string& variable : job.input.variables)
+    plans.push_back(prepare_job(job, variable, options, log).plan);
   return plans;
 }
 

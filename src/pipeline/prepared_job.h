@@ -23,6 +23,7 @@ struct PreparedJob {
 
 /// Names of the job's variables' jobs: {variable} in output.file filled in.
 [[nodiscard]] JobSpec job_of_variable(const JobSpec& job, const std::string& variable);
-[[nodiscard]] PreparedJob prepare_job(const JobSpec& job, const std::string& variable, const RunOptions& options, const Log& log);
+[[nodiscard]] PreparedJob prepare_job(const JobSpec& job, const std::string& variable, const RunOptions& options,
+                                      const Log& log);
 
 }  // namespace lagscape

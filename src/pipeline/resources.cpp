@@ -19,9 +19,9 @@ std::optional<std::size_t> number_in(const std::string& path) {
 }
 
 std::optional<std::size_t> group_allowance() {
-  for (const auto& [limit, used] : {std::pair{"/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory.current"},
-                                    std::pair{"/sys/fs/cgroup/memory/memory.limit_in_bytes",
-                                              "/sys/fs/cgroup/memory/memory.usage_in_bytes"}}) {
+  for (const auto& [limit, used] :
+       {std::pair{"/sys/fs/cgroup/memory.max", "/sys/fs/cgroup/memory.current"},
+        std::pair{"/sys/fs/cgroup/memory/memory.limit_in_bytes", "/sys/fs/cgroup/memory/memory.usage_in_bytes"}}) {
     const auto most = number_in(limit), now = number_in(used);
     if (most && now) return *most > *now ? *most - *now : 0;
   }
@@ -50,7 +50,9 @@ std::size_t peak_resident_bytes() {
 double cpu_seconds() {
   rusage usage{};
   getrusage(RUSAGE_SELF, &usage);
-  const auto seconds = [](const timeval& time) { return static_cast<double>(time.tv_sec) + 1e-6 * static_cast<double>(time.tv_usec); };
+  const auto seconds = [](const timeval& time) {
+    return static_cast<double>(time.tv_sec) + 1e-6 * static_cast<double>(time.tv_usec);
+  };
   return seconds(usage.ru_utime) + seconds(usage.ru_stime);
 }
 

@@ -37,7 +37,8 @@ Spread spread_of(std::vector<float> values) {
     std::ranges::nth_element(values, values.begin() + static_cast<std::ptrdiff_t>(below));
     const double low = values[below];
     if (below + 1 == values.size()) return low;
-    const double high = *std::ranges::min_element(values.begin() + static_cast<std::ptrdiff_t>(below) + 1, values.end());
+    const double high =
+        *std::ranges::min_element(values.begin() + static_cast<std::ptrdiff_t>(below) + 1, values.end());
     return low + (high - low) * (place - static_cast<double>(below));
   };
   spread.low = quantile(0.05);
@@ -49,19 +50,26 @@ Spread spread_of(std::vector<float> values) {
 /// What is kept of the whole map until the end.
 struct WholeMap {
   explicit WholeMap(std::size_t cells)
-      : status(cells, 0), time(cells), size(cells), lag1(cells), field{std::vector<double>(cells), std::vector<double>(cells), std::vector<float>(cells)} {}
+      : status(cells, 0),
+        time(cells),
+        size(cells),
+        lag1(cells),
+        field{std::vector<double>(cells), std::vector<double>(cells), std::vector<float>(cells)} {}
   std::vector<std::int16_t> status;  ///< -1: masked
   std::vector<float> time, size, lag1;
   FieldInput field;
   std::atomic<std::size_t> short_season_values{0}, order_uncorrected{0};
 };
 
-bool from_field_step(const Measure& measure) { return measure.name == "trend_p_field" || measure.name == "trend_class"; }
+bool from_field_step(const Measure& measure) {
+  return measure.name == "trend_p_field" || measure.name == "trend_class";
+}
 
 /// The maps of one band: floats layer-major, times in double.
 class BandMaps {
  public:
-  BandMaps(const std::vector<const Measure*>& measures, const MapSet& set, std::size_t cells) : measures_(measures), cells_(cells) {
+  BandMaps(const std::vector<const Measure*>& measures, const MapSet& set, std::size_t cells)
+      : measures_(measures), cells_(cells) {
     for (std::size_t i = 0; i < measures.size(); ++i) {
       const bool precise = measures[i]->type == MapType::f64;
       layers_.push_back(set.layers(set.maps[i]));
@@ -114,8 +122,8 @@ class BandMaps {
   std::vector<std::vector<double>> doubles_;
 };
 
-/// One run of one variable: bands are read one after the other; inside a band, blocks of cells go to the threads as they come.
-/// Every cell is computed alone, so nothing depends on bands, blocks or threads.
+/// One run of one variable: bands are read one after the other; inside a band, blocks of cells go to the threads as
+/// they come. Every cell is computed alone, so nothing depends on bands, blocks or threads.
 class VariableRun {
  public:
   VariableRun(PreparedJob job, const Progress& progress)
@@ -175,7 +183,8 @@ class VariableRun {
           for (std::size_t first = 0; first < count; first += kLanes) {
             const std::size_t lanes = std::min(kLanes, count - first);
             const auto results = analysis.analyse(tiles.data() + first * steps, lanes);
-            for (std::size_t lane = 0; lane < lanes; ++lane) keep(cells.first, offset + first + lane, results[lane], maps, layers);
+            for (std::size_t lane = 0; lane < lanes; ++lane)
+              keep(cells.first, offset + first + lane, results[lane], maps, layers);
           }
           done += count;
           if (progress_ && omp_get_thread_num() == 0) {
@@ -198,7 +207,8 @@ class VariableRun {
     if (problem) std::rethrow_exception(problem);
   }
 
-  void keep(std::size_t band_first, std::size_t at, const CellResult& result, BandMaps& maps, std::vector<float>& layers) noexcept {
+  void keep(std::size_t band_first, std::size_t at, const CellResult& result, BandMaps& maps,
+            std::vector<float>& layers) noexcept {
     const std::size_t cell = band_first + at;
     const bool masked = !excluded_.empty() && excluded_[cell] != 0;
     whole_.status[cell] = masked ? std::int16_t{-1} : result.status;
@@ -234,7 +244,8 @@ class VariableRun {
     report_.lag1 = spread_of(std::move(whole_.lag1));
     const TimeAxis& axis = job_.plan.panel.axis;
     report_.lag_unit = axis.lag_unit();
-    report_.decorrelation_years_median = report_.decorrelation_time.median / axis.lag_unit_per_step() / axis.steps_per_year();
+    report_.decorrelation_years_median =
+        report_.decorrelation_time.median / axis.lag_unit_per_step() / axis.steps_per_year();
     report_.values_in_short_seasons = whole_.short_season_values;
     report_.order_uncorrected = whole_.order_uncorrected;
     sink.add_global(closing_attributes(report_));
@@ -255,7 +266,8 @@ class VariableRun {
       }
       fine += static_cast<std::size_t>(status == 0);
       report_.cells_analysed += static_cast<std::size_t>((status & fatal) == 0);
-      for (std::size_t i = 0; i < counts.size(); ++i) counts[i] += static_cast<std::size_t>((status & status_bits()[i].mask) != 0);
+      for (std::size_t i = 0; i < counts.size(); ++i)
+        counts[i] += static_cast<std::size_t>((status & status_bits()[i].mask) != 0);
     }
     report_.status_counts.emplace_back("fine", fine);
     for (std::size_t i = 0; i < counts.size(); ++i) {
@@ -273,7 +285,8 @@ class VariableRun {
 
 }  // namespace
 
-std::vector<RunReport> run_job(const JobSpec& job, const RunOptions& options, const Log& log, const Progress& progress) {
+std::vector<RunReport> run_job(const JobSpec& job, const RunOptions& options, const Log& log,
+                               const Progress& progress) {
   std::vector<RunReport> reports;
   for (const std::string& variable : job.input.variables) {
     PreparedJob prepared = prepare_job(job, variable, options, log);

@@ -25,10 +25,12 @@ std::size_t in_steps(const JobSpec& job, std::string_view key, const StepsOrDura
   const std::string& text = std::get<std::string>(value);
   const std::optional<TimeStep> duration = parse_duration(text);
   if (!duration) {
-    throw impossible(job, key, fmt::format("'{}' is not a duration", text), "write an ISO 8601 duration such as \"P5Y\", or steps");
+    throw impossible(job, key, fmt::format("'{}' is not a duration", text),
+                     "write an ISO 8601 duration such as \"P5Y\", or steps");
   }
   const auto months = [](TimeStep step) { return step.count * (step.kind == StepKind::years ? 12 : 1); };
-  const bool calendar_step = axis.step().kind != StepKind::seconds, calendar_duration = duration->kind != StepKind::seconds;
+  const bool calendar_step = axis.step().kind != StepKind::seconds,
+             calendar_duration = duration->kind != StepKind::seconds;
   double steps = 0;
   if (calendar_step == calendar_duration) {
     steps = calendar_step ? static_cast<double>(months(*duration)) / static_cast<double>(months(axis.step()))
@@ -37,7 +39,8 @@ std::size_t in_steps(const JobSpec& job, std::string_view key, const StepsOrDura
     steps = std::round(static_cast<double>(months(*duration)) / 12 * axis.steps_per_year());
   }
   if (!(steps >= 1) || steps != std::floor(steps)) {
-    throw impossible(job, key, fmt::format("{} is no whole number of steps; this record is {}", text, step_words(axis.step())),
+    throw impossible(job, key,
+                     fmt::format("{} is no whole number of steps; this record is {}", text, step_words(axis.step())),
                      "give a multiple of the time step, or a number of steps");
   }
   return static_cast<std::size_t>(steps);
@@ -65,7 +68,8 @@ void resolve_season(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& 
     }
   }
   if (out.season == SeasonRule::calendar && axis.seasons() == 1) {
-    throw impossible(job, "prepare.season", fmt::format("'calendar' needs seasons, but the record is {}", step_words(axis.step())),
+    throw impossible(job, "prepare.season",
+                     fmt::format("'calendar' needs seasons, but the record is {}", step_words(axis.step())),
                      "use season = \"none\"");
   }
   out.told.push_back({"prepare.season", choice_word("prepare.season", out.season), reason});
@@ -75,15 +79,16 @@ void resolve_season(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& 
   if (out.harmonics > most && asked == SeasonRule::automatic && most >= 1) out.harmonics = most;
   if (out.harmonics > most) {
     throw impossible(job, "prepare.harmonics",
-                     fmt::format("{} harmonics a year cannot be told apart with {} steps a year", out.harmonics, human_number(per_year)),
+                     fmt::format("{} harmonics a year cannot be told apart with {} steps a year", out.harmonics,
+                                 human_number(per_year)),
                      fmt::format("use at most {}", std::max(1, most)));
   }
   out.told.push_back({"prepare.harmonics", fmt::format("{}", out.harmonics), ""});
   if (axis.step().kind == StepKind::seconds && 2 * axis.step().count <= kDay) {
     constexpr int kDaily = 2;
     out.daily_harmonics = std::min(kDaily, static_cast<int>(kDay / axis.step().count / 2));
-    out.notes.push_back(fmt::format("steps are shorter than a day: {} harmonics of the day are taken out with the season",
-                                    out.daily_harmonics));
+    out.notes.push_back(fmt::format(
+        "steps are shorter than a day: {} harmonics of the day are taken out with the season", out.daily_harmonics));
   }
 }
 
@@ -92,14 +97,16 @@ void resolve_filter(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& 
   if (job.prepare.remove == RemoveRule::season_difference) {
     out.filter_length = static_cast<std::size_t>(std::llround(axis.steps_per_year()));
     if (out.filter_length < 2) {
-      throw impossible(job, "prepare.remove", "a season difference needs steps shorter than a year", "use remove = \"difference\"");
+      throw impossible(job, "prepare.remove", "a season difference needs steps shorter than a year",
+                       "use remove = \"difference\"");
     }
   }
   if (job.prepare.remove == RemoveRule::running_mean) {
     out.filter_length = in_steps(job, "prepare.window", *job.prepare.window, axis);
     if (out.filter_length % 2 == 0) {
       ++out.filter_length;
-      out.notes.push_back(fmt::format("the running mean is centred, so its window is odd: {} steps", out.filter_length));
+      out.notes.push_back(
+          fmt::format("the running mean is centred, so its window is odd: {} steps", out.filter_length));
     }
     out.told.push_back({"prepare.window", fmt::format("{} steps", out.filter_length), ""});
   }
@@ -116,9 +123,10 @@ void resolve_max_lag(const JobSpec& job, const TimeAxis& axis, ResolvedSettings&
   if (job.memory.max_lag) {
     out.max_lag = in_steps(job, "memory.max_lag", *job.memory.max_lag, axis);
     if (out.max_lag > quarter) {
-      throw impossible(job, "memory.max_lag",
-                       fmt::format("{} steps are more than a quarter of the record ({} steps)", out.max_lag, axis.size()),
-                       fmt::format("use at most {} steps", quarter));
+      throw impossible(
+          job, "memory.max_lag",
+          fmt::format("{} steps are more than a quarter of the record ({} steps)", out.max_lag, axis.size()),
+          fmt::format("use at most {} steps", quarter));
     }
   } else {
     const auto n = static_cast<double>(axis.size());
@@ -141,7 +149,8 @@ DesignColumns season_columns(const ResolvedSettings& resolved, const TimeAxis& a
   if (resolved.season == SeasonRule::calendar) {
     columns.groups = static_cast<std::size_t>(axis.seasons());
     for (std::size_t t = 0; t < axis.size(); ++t) columns.group[t] = static_cast<std::uint16_t>(axis.season_of(t));
-    const double period = axis.step().kind == StepKind::months ? static_cast<double>(axis.seasons()) : axis.steps_per_year();
+    const double period =
+        axis.step().kind == StepKind::months ? static_cast<double>(axis.seasons()) : axis.steps_per_year();
     for (std::size_t h = 1; 2 * h <= columns.groups; ++h) {
       columns.frequencies.push_back({kTurn * static_cast<double>(h) / period, 2 * h == columns.groups ? 1 : 2});
     }
@@ -199,26 +208,29 @@ ResolvedSettings resolve_settings(const JobSpec& job, const TimeAxis& axis) {
   return out;
 }
 
-std::unique_ptr<AnalysisSettings> analysis_settings(const JobSpec& job, const ResolvedSettings& resolved, const TimeAxis& axis,
-                                                    const std::vector<std::string>& cubes) {
+std::unique_ptr<AnalysisSettings> analysis_settings(const JobSpec& job, const ResolvedSettings& resolved,
+                                                    const TimeAxis& axis, const std::vector<std::string>& cubes) {
   const RemoveRule remove = job.prepare.remove;
   DesignColumns prepare = season_columns(resolved, axis), trend = prepare;
   add_trend(prepare, remove == RemoveRule::linear ? 1 : remove == RemoveRule::quadratic ? 2 : 0);
   add_trend(trend, 1);
   auto settings = std::make_unique<AnalysisSettings>(prepare, trend, job.memory.confidence, job.trend.alpha);
   settings->separate_trend_fit = remove != RemoveRule::linear;
-  if (remove == RemoveRule::difference || remove == RemoveRule::season_difference) settings->filter = Filter::difference;
+  if (remove == RemoveRule::difference || remove == RemoveRule::season_difference)
+    settings->filter = Filter::difference;
   if (remove == RemoveRule::running_mean) settings->filter = Filter::running_mean;
   settings->filter_length = resolved.filter_length;
   settings->min_share = job.prepare.min_share;
   settings->share_of_period = job.prepare.share_of_period;
   settings->min_count = static_cast<double>(job.prepare.min_count);
   settings->bartlett_limits = job.memory.limits == LimitRule::bartlett;
-  constexpr OrderCriterion kCriteria[] = {OrderCriterion::bic, OrderCriterion::aicc, OrderCriterion::aic, OrderCriterion::fixed};
+  constexpr OrderCriterion kCriteria[] = {OrderCriterion::bic, OrderCriterion::aicc, OrderCriterion::aic,
+                                          OrderCriterion::fixed};
   settings->criterion = kCriteria[static_cast<std::size_t>(job.memory.order)];
   settings->fixed_order = job.memory.fixed_order;
   settings->max_order = job.memory.max_order;
-  const bool over_lags = std::ranges::any_of(cubes, [](const std::string& name) { return find_measure(name)->axis == LayerAxis::lag; });
+  const bool over_lags =
+      std::ranges::any_of(cubes, [](const std::string& name) { return find_measure(name)->axis == LayerAxis::lag; });
   settings->cube_lags = over_lags ? resolved.max_lag + 1 : 0;
   settings->want_partial = std::ranges::find(cubes, "partial_autocorrelation") != cubes.end();
   for (const std::string& name : job.trend.tests) settings->tests.push_back(find_trend_test(name));

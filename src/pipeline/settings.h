@@ -2,8 +2,8 @@
 #include <memory>
 #include <vector>
 
-#include "lagscape/job/job_spec.h"
 #include "lagscape/grid/time_axis.h"
+#include "lagscape/job/job_spec.h"
 #include "lagscape/measures/analysis.h"
 #include "lagscape/measures/measure.h"
 #include "lagscape/pipeline/run.h"
@@ -13,10 +13,10 @@ namespace lagscape {
 /// A job's settings once the time axis is known: every "auto" decided, every duration in steps.
 struct ResolvedSettings {
   SeasonRule season = SeasonRule::none;
-  int harmonics = 0;           ///< per year, when season is harmonics
-  int daily_harmonics = 0;     ///< per day, for steps shorter than a day
+  int harmonics = 0;        ///< per year, when season is harmonics
+  int daily_harmonics = 0;  ///< per day, for steps shorter than a day
   std::size_t filter_length = 1;
-  std::size_t max_lag = 0;     ///< of the cubes
+  std::size_t max_lag = 0;             ///< of the cubes
   std::vector<EffectiveSetting> told;  ///< for people, in the order of the job file
   std::vector<std::string> notes;
 };
@@ -26,6 +26,7 @@ struct ResolvedSettings {
 
 /// What the stages need, from the settings. wanted_cubes: names.
 [[nodiscard]] std::unique_ptr<AnalysisSettings> analysis_settings(const JobSpec& job, const ResolvedSettings& resolved,
-                                                                  const TimeAxis& axis, const std::vector<std::string>& cubes);
+                                                                  const TimeAxis& axis,
+                                                                  const std::vector<std::string>& cubes);
 
 }  // namespace lagscape

@@ -189,23 +189,11 @@ void drop_single_seasons(const Design& design, std::uint8_t* bits, const Aligned
 }
 
 /// Shares of variance: the trend's own, and the rest of the fit, which is the season's.
-void variance_shares(const Design& design, const double* x, const std::uint8_t* bits, const double* d,
-                     const double (&trend)[2][kLanes], LaneFit& fit) {
-  alignas(64) double sums[4][kLanes] = {};
-  const std::size_t terms = design.trend_columns();
-  for (std::size_t t = 0; t < design.steps(); ++t) {
-    if (bits[t] == 0) continue;
-    const double first = terms > 0 ? design.trend_term(0, t) : 0, second = terms > 1 ? design.trend_term(1, t) : 0;
-    for (std::size_t lane = 0; lane < kLanes; ++lane) {
-      const bool valid = (bits[t] >> lane & 1) != 0;
-      const double drift = trend[0][lane] * first + trend[1][lane] * second;
-      const double season = x[t * kLanes + lane] - fit.mean[lane] - d[t * kLanes + lane] - drift;
-      sums[0][lane] += valid ? drift : 0.0;
-      sums[1][lane] += valid ? drift * drift : 0.0;
-      sums[2][lane] += valid ? season : 0.0;
-      sums[3][lane] += valid ? season * season : 0.0;
-    }
-  }
+void variance_shares(const KernelTable& kernels, const Design& design, const double* x, const std::uint8_t* bits,
+                     const double* d, const double (&trend)[2][kLanes], LaneFit& fit) {
+  alignas(64) double sums[4][kLanes];
+  kernels.component_sums(x, d, bits, design.steps(), fit.mean, design.trend_terms(), design.trend_columns(), trend[0],
+                         sums[0]);
   for (std::size_t lane = 0; lane < kLanes; ++lane) {
     const double m = fit.count[lane], total = fit.total_squares[lane];
     if (!(total > 0)) continue;
@@ -271,7 +259,7 @@ LaneFit fit_lanes(const KernelTable& kernels, const Design& design, const double
       fit.slope_factor[lane] = 1 / (pivot * pivot * length * length);
     }
   }
-  variance_shares(design, x, bits, d, trend, fit);
+  variance_shares(kernels, design, x, bits, d, trend, fit);
   return fit;
 }
 

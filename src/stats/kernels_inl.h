@@ -197,6 +197,31 @@ void subtract_fit(double* d, const uint8_t* bits, const DesignView& design, cons
   }
 }
 
+void component_sums(const double* x, const double* d, const uint8_t* bits, size_t steps, const double* mean,
+                    const double* terms, size_t count, const double* coefficients, double* sums) noexcept {
+  for (size_t lane0 = 0; lane0 < kLanes; lane0 += kWidth) {
+    const V middle = load(mean + lane0);
+    const V first = load(coefficients + lane0), second = load(coefficients + kLanes + lane0);
+    V drift_sum{}, drift_squares{}, rest_sum{}, rest_squares{};
+    for (size_t t = 0; t < steps; ++t) {
+      V drift{};
+      if (count > 0) drift = first * all(terms[t]);
+      if (count > 1) drift = fma(second, all(terms[steps + t]), drift);
+      drift = keep(drift, bits[t], lane0);
+      const V fitted = load(x + t * kLanes + lane0) - middle - load(d + t * kLanes + lane0);
+      const V rest = keep(fitted - drift, bits[t], lane0);
+      drift_sum += drift;
+      drift_squares = fma(drift, drift, drift_squares);
+      rest_sum += rest;
+      rest_squares = fma(rest, rest, rest_squares);
+    }
+    store(sums + lane0, drift_sum);
+    store(sums + kLanes + lane0, drift_squares);
+    store(sums + 2 * kLanes + lane0, rest_sum);
+    store(sums + 3 * kLanes + lane0, rest_squares);
+  }
+}
+
 /// One block of time and kLagsAtOnce lags: each value is loaded once, the partners stream past it.
 inline void lag_block(const double* d, size_t begin, size_t end, size_t first, size_t lane0, V* sums) {
   V partial[kLagsAtOnce] = {};
@@ -294,6 +319,7 @@ const KernelTable LAGSCAPE_KERNELS = {
     .project = project,
     .missing_rows = missing_rows,
     .subtract_fit = subtract_fit,
+    .component_sums = component_sums,
     .lag_products = lag_products,
     .burg = burg,
     .durbin_levinson = durbin_levinson,

@@ -42,10 +42,8 @@ class Design {
   [[nodiscard]] std::size_t trend_columns() const noexcept { return trend_columns_; }
   /// Steps in each group of the complete record.
   [[nodiscard]] const std::vector<double>& group_steps() const noexcept { return group_steps_; }
-  /// Raw trend term j at step t: time in steps from the middle of the record, or its square less its mean.
-  [[nodiscard]] double trend_term(std::size_t j, std::size_t t) const noexcept {
-    return trend_terms_[j * group_.size() + t];
-  }
+  /// Raw trend terms, one after the other: time in steps from the middle of the record, and its square less its mean.
+  [[nodiscard]] const double* trend_terms() const noexcept { return trend_terms_.data(); }
   /// Raw trend coefficients follow from the effects of the last orthonormal columns: upper triangle, trend_columns
   /// squared.
   [[nodiscard]] double triangle(std::size_t row, std::size_t col) const noexcept {

@@ -52,6 +52,12 @@ struct KernelTable {
   /// d -= group_effect[group[t]] + sum_j effect[j] column_j[t] where valid.
   void (*subtract_fit)(double* d, const std::uint8_t* bits, const DesignView& design, const double* group_effect,
                        const double* effect) noexcept;
+  /// Sums over valid steps of the fitted trend, of its square, of the rest of the fit and of its square: four lane
+  /// arrays. terms: `count` (0 to 2) trend terms of `steps` doubles, coefficients: a lane array each; x, d, mean as in
+  /// the fit.
+  void (*component_sums)(const double* x, const double* d, const std::uint8_t* bits, std::size_t steps,
+                         const double* mean, const double* terms, std::size_t count, const double* coefficients,
+                         double* sums) noexcept;
   /// sums[k - first] = sum_t d[t] d[t + k] for `count` lags. d has kPadRows rows of zeros after the last step.
   /// Time is cut into blocks of 504 rows whatever the lags asked for, so a lag's sum has one order of additions.
   void (*lag_products)(const double* d, std::size_t steps, std::size_t first, std::size_t count, double* sums) noexcept;
