@@ -31,10 +31,10 @@ EVERY_MAP = IN_UNITS | IN_STEPS | CUBES | EXACT | set(LOOSER) | {
     "effective_sample_size", "effective_sample_size_for_variance", "effective_sample_size_for_trend"}
 
 
-def expected_maps(cells, axis, settings, times, rate=0.10, control="bh"):
+def expected_maps(cells, axis, settings, times, rate=0.10, control="bh", rate_years=1):
     """Map name -> array over cells (cubes: layers first). cells: list of series; times: days since 1970 of each step."""
     found = [oracle.analyse(x, axis, settings) for x in cells]
-    per_year = axis.steps_per_year
+    steps_per_rate = axis.steps_per_year * rate_years
 
     def one(name, factor=1.0):
         return np.array([cell.get(name, np.nan) for cell in found], float) * factor
@@ -45,7 +45,7 @@ def expected_maps(cells, axis, settings, times, rate=0.10, control="bh"):
         maps[name] = np.array([cell.get(name, np.full(layers, np.nan)) for cell in found]).T
     for map_name, key in (("trend_slope", "slope"), ("trend_slope_low", "slope_low"), ("trend_slope_high", "slope_high"),
                           ("detectable_trend", "detectable")):
-        maps[map_name] = one(key, per_year)
+        maps[map_name] = one(key, steps_per_rate)
     for map_name, key in (("first_time", "first"), ("last_time", "last")):
         maps[map_name] = np.array([times[cell[key]] if cell["valid_count"] else np.nan for cell in found])
     maps["trend_p_ols_neff"], maps["trend_p_ols"] = maps["trend_p"], maps["trend_p_independent"]

@@ -28,6 +28,9 @@ maps = ["all"]
 cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", "autocovariance", "pair_count",
          "ar_coefficients"]
 """
+# The same grid with every choice made otherwise; the trend then has a fit of its own.
+OTHERWISE = {"prepare.remove": '"mean"', "prepare.share_of": '"period"', "memory.limits": '"independent"',
+             "memory.order": '"aicc"', "memory.confidence": "0.9", "trend.alpha": "0.01", "trend.per": '"decade"', "field.control": '"by"'}
 KINDS = [[0.0], [0.3], [0.6], [0.9], [0.5, 0.3], [1.2, -0.5], [-0.4], [0.3, 0.2, 0.2], [0.2, 0, 0, 0.3, 0.25], [0.97]]
 
 
@@ -118,24 +121,30 @@ def read_raw(path):
 
 
 def main(program):
+    axis = oracle.Axis(seasons=np.arange(STEPS) % 12)
+    times = [(np.datetime64("1961-01", "M") + t).astype("datetime64[D]").astype(int) + 14.5 for t in range(STEPS)]
+    found = check.Comparison([f"row {cell // COLS}, col {cell % COLS}" for cell in range(ROWS * COLS)], scale=1.0)
     with tempfile.TemporaryDirectory() as name:
         folder = pathlib.Path(name)
         write(folder / "grid.nc", make_cells())
         cells = read_raw(folder / "grid.nc")
         check.run(program, folder, JOB)
-        axis = oracle.Axis(seasons=np.arange(STEPS) % 12)
         settings = oracle.Settings(min_share=0.45, max_lag=36)
-        times = [(np.datetime64("1961-01", "M") + t).astype("datetime64[D]").astype(int) + 14.5 for t in range(STEPS)]
         expected, _ = check.expected_maps(cells, axis, settings, times)
-        labels = [f"row {cell // COLS}, col {cell % COLS}" for cell in range(ROWS * COLS)]
-        found = check.Comparison(labels, scale=1.0)
         found.all_maps(expected, check.read(folder / "maps.nc", check.maps_in(folder / "maps.nc")))
         units = check.read(folder / "maps.nc", ["mean", "trend_slope", "residual_sd", "decorrelation_time"])
         for variable, unit in (("mean", "degC"), ("trend_slope", "K year-1"), ("residual_sd", "K"),
                                ("decorrelation_time", "month")):
             if units[variable][1] != unit:
                 found.problems.append(f"{variable}: unit '{units[variable][1]}', expected '{unit}'")
-        found.finish()
+
+        changes = {**OTHERWISE, "output.file": f'"{folder / "other.nc"}"'}
+        check.run(program, folder, JOB, *(part for key, value in changes.items() for part in ("--set", f"{key}={value}")))
+        settings = oracle.Settings(min_share=0.45, max_lag=36, remove="mean", share_of="period", limits="independent",
+                                   order="aicc", confidence=0.9, alpha=0.01)
+        expected, _ = check.expected_maps(cells, axis, settings, times, control="by", rate_years=10)
+        found.all_maps(expected, check.read(folder / "other.nc", check.maps_in(folder / "other.nc")))
+    found.finish()
 
 
 if __name__ == "__main__":

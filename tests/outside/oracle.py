@@ -29,17 +29,19 @@ class Axis:
         waves = [f(2 * np.pi * h * self.phases) for h in range(1, self.harmonics + 1) for f in (np.cos, np.sin)]
         return np.column_stack([np.ones(self.n), *waves])
 
-    def frequencies(self):
-        """Frequency of every design column beside the mean: the trend, then the season (for the bias of AR coefficients)."""
+    def frequencies(self, line):
+        """Frequency of every design column beside the mean: straight line, season (for the bias of AR coefficients)."""
+        trend = [0.0] if line else []
         if self.seasons is not None:
-            return [0.0] + [2 * np.pi * h / 12 for h in range(1, 6) for _ in range(2)] + [np.pi]
-        return [0.0] + [2 * np.pi * h / self.steps_per_year for h in range(1, self.harmonics + 1) for _ in range(2)]
+            return trend + [2 * np.pi * h / 12 for h in range(1, 6) for _ in range(2)] + [np.pi]
+        return trend + [2 * np.pi * h / self.steps_per_year for h in range(1, self.harmonics + 1) for _ in range(2)]
 
 
 class Settings:
     """The keys of a job that the estimates depend on, with the program's defaults."""
     max_lag, max_order, confidence, alpha = 24, 10, 0.95, 0.05
-    min_share, min_count = 0.8, 30
+    min_share, min_count, share_of = 0.8, 30, "span"
+    remove, limits, order = "linear", "bartlett", "bic"
 
     def __init__(self, **keys):
         for key, value in keys.items():
@@ -47,10 +49,10 @@ class Settings:
             setattr(self, key, value)
 
 
-# --- preparation: one least-squares fit of season and straight line to the values there are -------------------------
+# --- preparation: one least-squares fit of season and, where asked for, straight line to the values there are ----------
 
 class Fit:
-    def __init__(self, x, axis):
+    def __init__(self, x, axis, with_line=True):
         valid = np.isfinite(x)
         design = axis.season_columns()
         self.dropped = 0
@@ -65,7 +67,7 @@ class Fit:
         self.valid, self.m = valid, int(valid.sum())
         t = np.arange(axis.n, dtype=float)
         line = (t - t[valid].mean()) / axis.n
-        full = np.column_stack([design, line])
+        full = np.column_stack([design, line] if with_line else [design])
         rows, y = full[valid], x[valid]
         q_matrix, r_matrix, order = linalg.qr(rows, mode="economic", pivoting=True)
         self.q = rows.shape[1]
@@ -73,16 +75,18 @@ class Fit:
         coefficients[order] = linalg.solve_triangular(r_matrix, q_matrix.T @ y)
         inverse = np.empty((self.q, self.q))
         inverse[np.ix_(order, order)] = np.linalg.inv(r_matrix.T @ r_matrix)
-        self.slope = coefficients[-1] / axis.n              # per step
-        self.spread = inverse[-1, -1] / axis.n**2           # [(X'X)^-1] of the slope
+        seasons = design.shape[1]
+        if with_line:
+            self.slope = coefficients[-1] / axis.n              # per step
+            self.spread = inverse[-1, -1] / axis.n**2           # [(X'X)^-1] of the slope
         self.residual = np.where(valid, x - full @ coefficients, np.nan)
         self.sse = float(np.nansum(self.residual**2))
         self.mean = float(y.mean())
         # Choice: what season and trend each explain is the variance of its fitted part over the valid steps, as a share of
         # the variance of the values.
         total = np.mean((y - self.mean) ** 2)
-        self.season_share = np.var(rows[:, :-1] @ coefficients[:-1]) / total
-        self.trend_share = np.var(rows[:, -1] * coefficients[-1]) / total
+        self.season_share = np.var(rows[:, :seasons] @ coefficients[:seasons]) / total
+        self.trend_share = np.var(rows[:, seasons:] @ coefficients[seasons:]) / total
 
 
 # --- autocorrelation -------------------------------------------------------------------------------------------------
@@ -221,6 +225,8 @@ def corrected(f_hat, m, frequencies):
     if p > 3:
         return f_hat, False
     if p == 1:  # only the cap .99
+        if abs(f_hat[0]) >= 1:  # with gaps r_1 may leave (-1, 1), where no AR(1) exists and (1 + f) / (1 - f) has the wrong sign
+            return np.clip(f_hat, -0.99, 0.99), True
         if abs(f_hat[0]) >= 0.99:
             return f_hat, True
         f = f_hat
@@ -323,13 +329,14 @@ def describe(x, settings, axis):
         return out, NO_DATA
     first, last = (int(i) for i in np.flatnonzero(valid)[[0, -1]])
     span = last - first + 1
-    out.update(first=first, last=last, span=span, valid_share=m / span, longest_gap=longest_run(~valid[first : last + 1]))
+    share = m / (span if settings.share_of == "span" else len(x))
+    out.update(first=first, last=last, span=span, valid_share=share, longest_gap=longest_run(~valid[first : last + 1]))
     y = x[valid]
     status = 0
     parameters = axis.season_columns().shape[1] + 1
-    if m < max(settings.min_count, 20, parameters + 10) or m / span < settings.min_share:
+    if m < max(settings.min_count, 20, parameters + 10) or share < settings.min_share:
         status |= TOO_FEW
-    if m / span < 0.8:
+    if share < 0.8:
         status |= GAPS
     if y.max() - y.min() <= 8 * 2.2e-16 * np.max(np.abs(y)):
         status |= CONSTANT
@@ -351,7 +358,8 @@ def analyse(x, axis, settings):
         out.update(mean=x[np.isfinite(x)].mean(), slope=0.0, trend_total=0.0)
     if status & (NO_DATA | TOO_FEW | CONSTANT):
         return out
-    fit = Fit(x, axis)
+    line = settings.remove == "linear"
+    fit = Fit(x, axis, line)
     if fit.seasons_left < 2:
         out["status"] |= SEASON
         return out
@@ -364,7 +372,8 @@ def analyse(x, axis, settings):
     def cube(values):
         return np.concatenate([values[: lags + 1], np.full(settings.max_lag - lags, np.nan)])
 
-    limit = acf.bartlett(z)
+    limit = acf.bartlett(z) if settings.limits == "bartlett" else np.where(np.isnan(acf.r), np.nan, z / np.sqrt(m))
+    limit[0] = np.nan
     out.update(autocorrelation=cube(acf.r), autocovariance=cube(acf.covariance), pair_count=cube(acf.pairs.astype(float)),
                autocorrelation_limit=cube(limit), partial_autocorrelation=acf.partial(settings.max_lag),
                residual_sd=np.sqrt(fit.sse / (m - fit.q)), variance_share_season=fit.season_share,
@@ -389,23 +398,29 @@ def analyse(x, axis, settings):
     q_statistic = m * (m + 2) * np.sum(r[1 : h + 1] ** 2 / acf.pairs[1 : h + 1])
     out["ljung_box_p"] = stats.chi2.sf(q_statistic, h)
 
-    frequencies = axis.frequencies()
+    frequencies = axis.frequencies(line)
     f1, at_bound = corrected(r[1:2], m, frequencies)
     out.update(lag1_autocorrelation=r[1], lag1_autocorrelation_corrected=f1[0])
     out["ar1_time"] = (1 + f1[0]) / (1 - f1[0])  # Choice: from the corrected coefficient
     at_bound |= autoregression(fit, acf, n, z, frequencies, settings, out)
-    trend(fit, acf, n, f1[0], settings, axis, out)
+    if not line:  # the trend has a fit of its own, with its own residual
+        fit = Fit(x, axis)
+        r = Correlogram(fit.residual[inside]).r
+        f1, trend_at_bound = corrected(r[1:2], m, axis.frequencies(True))
+        at_bound |= trend_at_bound
+    trend(fit, acf, n, f1[0], settings, out)
     out["status"] |= (UNIT_ROOT if at_bound else 0) | (LAG_RANGE if beyond else 0) | (GAPS if acf.inconsistent else 0)
     return out
 
 
 def autoregression(fit, acf, n, z, frequencies, settings, out):
-    """AR(p) by segment Burg and BIC with p >= 1; decorrelation time, effective sizes, limits of the mean."""
+    """AR(p) by segment Burg with p >= 1; decorrelation time, effective sizes, limits of the mean."""
     m = fit.m
     fits = segment_burg(fit.residual, min(settings.max_order, m // 10))
     offered = [p for p in range(1, len(fits)) if fits[p][2] >= max(20, m / 4)]
     assert offered, "no series of the tests has so many gaps"
-    p = min(offered, key=lambda order: m * np.log(fits[order][1]) + order * np.log(m))
+    penalty = {"bic": lambda p: p * np.log(m), "aicc": lambda p: 2 * (p + fit.q + 1) * m / (m - p - fit.q - 2)}[settings.order]
+    p = min(offered, key=lambda order: m * np.log(fits[order][1]) + penalty(order))
     f_hat, _, terms = fits[p]
     f, at_bound = corrected(f_hat, m, frequencies)
     tau, error = np.exp(ln_tau(f)), ln_tau_error(f, terms)
@@ -427,7 +442,7 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
     return at_bound
 
 
-def trend(fit, acf, n, f, settings, axis, out):
+def trend(fit, acf, n, f, settings, out):
     """Straight line with n_eff (Santer et al. 2000) from the corrected lag-1 autocorrelation, and as if independent."""
     m, q = fit.m, fit.q
     k = np.arange(1, acf.n)
