@@ -10,7 +10,8 @@ import sys
 import tempfile
 
 program, source, command = pathlib.Path(sys.argv[1]).resolve(), pathlib.Path(sys.argv[2]), sys.argv[3]
-shown = subprocess.run([program, *([command] if command != "help" else []), "--help"], capture_output=True, text=True, check=True).stdout
+asked = [program, "--help"] if command == "help" else [program, command, "--help"]
+shown = subprocess.run(asked, capture_output=True, text=True, check=True).stdout
 listing = shown.split("\nExamples:\n")[1].split("\n\n")[0]
 examples = listing.replace("\\\n", " ").splitlines()
 assert examples and all(line.startswith("  lagscape ") for line in examples), listing
