@@ -30,7 +30,8 @@ cubes = ["autocorrelation", "autocorrelation_limit", "partial_autocorrelation", 
 """
 # The same grid with every choice made otherwise; the trend then has a fit of its own.
 OTHERWISE = {"prepare.remove": '"mean"', "prepare.share_of": '"period"', "memory.limits": '"independent"',
-             "memory.order": '"aicc"', "memory.confidence": "0.9", "trend.alpha": "0.01", "trend.per": '"decade"', "field.control": '"by"'}
+             "memory.order": '"aicc"', "memory.confidence": "0.9",
+             "trend.alpha": "0.01", "trend.per": '"decade"', "field.control": '"by"'}
 KINDS = [[0.0], [0.3], [0.6], [0.9], [0.5, 0.3], [1.2, -0.5], [-0.4], [0.3, 0.2, 0.2], [0.2, 0, 0, 0.3, 0.25], [0.97]]
 
 
