@@ -15,7 +15,7 @@ namespace {
 
 constexpr std::size_t kColumn = 16;
 constexpr std::size_t kMostFiles = 8;
-constexpr std::size_t kMostFilesInCommand = 3;
+constexpr std::size_t kMostFilesInCommand = 12;
 
 std::string line(std::string_view label, std::string_view text) { return listed(label, text, kColumn, kReportWidth); }
 
