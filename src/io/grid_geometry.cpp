@@ -76,9 +76,12 @@ bool unwrap(std::vector<double>& longitudes) {
   return changed;
 }
 
+// Brings the bounds of longitudes to the turn of their cells; a cell may be as wide as the globe.
 void fit_bounds(SpaceAxis& axis) {
-  for (std::size_t i = 0; i < axis.bounds.size(); ++i)
-    axis.bounds[i] += 360 * std::round((axis.values[i / 2] - axis.bounds[i]) / 360);
+  for (std::size_t i = 0; i < axis.bounds.size(); ++i) {
+    const double away = axis.values[i / 2] - axis.bounds[i];
+    if (std::fabs(away) > 180 + kDegreeSlack) axis.bounds[i] += 360 * std::round(away / 360);
+  }
 }
 
 void read_rectangle(const NcFile& file, const VariableLayout& layout, Geometry& geometry,
@@ -122,7 +125,7 @@ std::vector<std::string> site_names(const NcFile& file, const VariableLayout& la
   bool repeated = false;
   for (std::size_t i = 0; i < count; ++i) {
     if (names[i].empty())
-      names[i] = fmt::format("{} {}", dim.empty() ? "series" : dim, i + 1);
+      names[i] = dim.empty() ? layout.variable.name() : fmt::format("{} {}", dim, i + 1);
     else if (coordinate)
       names[i] = fmt::format("{} {}", dim, names[i]);
     if (const int times = ++seen[names[i]]; times > 1) {

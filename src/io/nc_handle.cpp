@@ -214,6 +214,7 @@ std::vector<NcVariable> NcFile::variables() const {
 }
 
 std::optional<NcVariable> NcFile::find(std::string_view name, int from) const {
+  if (name.find('/') != std::string_view::npos && !name.starts_with('/')) return find("/" + std::string(name), from);
   const std::string wanted(name);
   int id = -1;
   if (name.starts_with('/')) {

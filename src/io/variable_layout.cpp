@@ -358,7 +358,19 @@ class LayoutFinder {
       });
     if (free.size() >= 2) return take_index_grid(free[free.size() - 2], free[free.size() - 1]);
     if (free.size() == 1) return take_sites(free.front());
-    out_.kind = GeometryKind::sites;  // a single series
+    take_single_series();
+  }
+
+  // A file of one site, with its place and name in scalars.
+  void take_single_series() {
+    out_.kind = GeometryKind::sites;
+    for (const Companion& one : companions_) {
+      const bool scalar = one.variable.size() == 1 && is_number_type(one.variable.type);
+      if (scalar && one.role == CoordinateRole::latitude) out_.lat = one.variable;
+      if (scalar && one.role == CoordinateRole::longitude) out_.lon = one.variable;
+      if (text_attribute(one.attributes, "cf_role") == "timeseries_id") out_.names = one.variable;
+    }
+    if (!out_.lat || !out_.lon) out_.lat = out_.lon = std::nullopt;
   }
 
   void take_index_grid(std::size_t row, std::size_t column) {

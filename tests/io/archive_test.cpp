@@ -198,6 +198,26 @@ TEST(Archive, DescendingLongitudesAreReversedAndLatitudesKept) {
   EXPECT_EQ(all_values(*source, 1)[kCols * 2 + 1], value_at(0, 2, 3));
 }
 
+TEST(Archive, BoundsGoWithTheirColumns) {
+  const Folder folder;
+  for (const bool descending : {false, true}) {
+    NcSample s(folder / "a.nc");
+    const int t = s.dim("time", 2), y = s.dim("lat", 1), x = s.dim("lon", 4), nv = s.dim("nv", 2);
+    s.coordinate("time", {t}, {0, 1}, "days since 2001-01-01");
+    s.coordinate("lat", {y}, {5}, "degrees_north");
+    const std::vector<double> up = {0, 90, 180, 270}, up_edges = {-45, 45, 45, 135, 135, 225, 225, 315};
+    const int lon = s.coordinate("lon", {x}, descending ? range(270, -90, 4) : up, "degrees_east");
+    s.text(lon, "bounds", "lon_bnds");
+    s.put(s.var("lon_bnds", NC_DOUBLE, {x, nv}),
+          descending ? std::vector<double>{up_edges.rbegin(), up_edges.rend()} : up_edges);
+    s.put(s.var("wetness", NC_FLOAT, {t, y, x}), range(0, 1, 8));
+    const auto source = open(request({s.close()}, "wetness"));
+    EXPECT_EQ(source->panel().geometry.x.values, (std::vector<double>{-180, -90, 0, 90}));
+    EXPECT_EQ(source->panel().geometry.x.bounds, (std::vector<double>{-225, -135, -135, -45, -45, 45, 45, 135}));
+    EXPECT_EQ(all_values(*source)[0], descending ? 1 : 2);
+  }
+}
+
 TEST(Archive, CoordinatesOfFloatsBecomeTheirShortestDecimals) {
   const Folder folder;
   NcSample s(folder / "a.nc");
@@ -369,7 +389,7 @@ TEST(Archive, VariableInAGroupFindsCoordinatesOfItsParent) {
   ok(nc_def_var(group, "wetness", NC_DOUBLE, 3, dims, &var));
   ok(nc_put_var_double(group, var, range(0, 1, 8).data()));
   const std::string path = s.close();
-  for (const char* name : {"wetness", "/soil/wetness"}) {
+  for (const char* name : {"wetness", "/soil/wetness", "soil/wetness"}) {
     const auto source = open(request({path}, name));
     EXPECT_EQ(source->panel().geometry.kind, GeometryKind::latlon);
     expect_same(all_values(*source), range(0, 1, 8));
@@ -458,6 +478,36 @@ TEST(Archive, BoxKeepsTheSitesInIt) {
   const auto source = open(job);
   EXPECT_EQ(source->panel().geometry.site_names, (std::vector<std::string>{"Birch", "Carr"}));
   expect_same(all_values(*source), {10, 20, 11, 21, 12, 22, 13, 23});
+}
+
+TEST(Archive, FileOfOneSeriesIsASiteWithTheNameAndPlaceOfItsScalars) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const int t = s.dim("time", 3), width = s.dim("width", 8);
+  s.coordinate("time", {t}, {0, 1, 2}, "days since 2001-01-01");
+  s.coordinate("lat", {}, {51.5}, "degrees_north");
+  s.coordinate("lon", {}, {-2.5}, "degrees_east");
+  const int name = s.var("name", NC_CHAR, {width});
+  s.text(name, "cf_role", "timeseries_id");
+  s.put_text(name, std::string("Alder\0\0\0", 8));
+  s.put(s.var("flow", NC_FLOAT, {t}), {4, 5, 6});
+  const auto source = open(request({s.close()}, "flow"));
+  const Geometry& geometry = source->panel().geometry;
+  EXPECT_EQ(geometry.site_names, (std::vector<std::string>{"Alder"}));
+  EXPECT_EQ(geometry.lat, (std::vector<double>{51.5}));
+  EXPECT_EQ(geometry.lon, (std::vector<double>{-2.5}));
+  expect_same(all_values(*source), {4, 5, 6});
+}
+
+TEST(Archive, RaggedArraysAreRefusedWithWhatToDo) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const int o = s.dim("obs", 4), n = s.dim("station", 2);
+  s.coordinate("time", {o}, {0, 1, 0, 1}, "days since 2001-01-01");
+  const int counts = s.var("row_size", NC_INT, {n});
+  s.text(counts, "sample_dimension", "obs");
+  s.put(s.var("flow", NC_FLOAT, {o}), {1, 2, 3, 4});
+  EXPECT_TRUE(has(refusal(request({s.close()}, "flow")), "ragged"));
 }
 
 // ---- many files -----------------------------------------------------------------------------------------------------
@@ -683,6 +733,27 @@ TEST(Archive, BrokenTimeUnitsAreMendedByTheJob) {
   const auto source = open(job);
   EXPECT_EQ(source->panel().axis.label(5), "2001-01-06");
   EXPECT_EQ(source->panel().axis.calendar(), Calendar::noleap);
+}
+
+TEST(Archive, TimeDimensionWithoutCoordinateIsCountedAsTheJobSays) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const int t = s.dim("time", 3), n = s.dim("station", 2);
+  s.put(s.var("flow", NC_FLOAT, {t, n}), range(0, 1, 6));
+  InputRequest job = request({s.close()}, "flow");
+  EXPECT_TRUE(has(refusal(job), "'time' has no coordinate"));
+  job.time = InputRequest::TimeMend{"months since 1981-01-01", std::nullopt, std::nullopt};
+  const auto source = open(job);
+  EXPECT_EQ(source->panel().axis.label(2), "1981-03-01");
+  EXPECT_TRUE(noted(source->panel(), "counted from 0"));
+  expect_same(all_values(*source), range(0, 1, 6));
+}
+
+TEST(Archive, TimesThatAreMissingAreRefused) {
+  const Folder folder;
+  GridFile grid;
+  grid.times[3] = kNaN;
+  EXPECT_TRUE(has(refusal(request({write(folder / "a.nc", grid)}, "wetness")), "a.nc"));
 }
 
 TEST(Archive, KindsOfFileAreNotMixed) {

@@ -63,6 +63,17 @@ TEST(NcFile, ErrorsNameFileAndVariableAndAreOutputErrorsWhenWriting) {
   EXPECT_TRUE(has(exists, "cannot be created")) << exists;
 }
 
+TEST(NcFile, AMissingCompressionFilterIsExplained) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  s.put(s.var("wetness", NC_FLOAT, {s.dim("x", 2)}), {1, 2});
+  const NcFile file = NcFile::open(s.close());
+  const std::string message = message_of([&] { file.check(NC_EFILTER, "reading", file.find("wetness").value()); });
+  EXPECT_TRUE(has(message, "variable: wetness") && has(message, "hdf5-filter-plugin") &&
+              has(message, "HDF5_PLUGIN_PATH"))
+      << message;
+}
+
 TEST(NcFile, AFileThatAnotherProgramHasLockedIsExplained) {
   const Folder folder;
   NcSample sample(folder / "a.nc");

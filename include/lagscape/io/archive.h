@@ -18,9 +18,9 @@ enum class LongitudeRule { automatic, as_input };
 struct InputRequest {
   std::vector<std::string> files;  ///< paths, globs already expanded
   std::string variable;
-  std::vector<std::pair<std::string, double>> select;               ///< dimension -> coordinate value (nearest within 1e-6 relative)
-  std::optional<std::pair<std::string, std::string>> period;        ///< ISO dates, both inclusive
-  std::optional<std::array<double, 4>> box;                         ///< west, south, east, north in degrees
+  std::vector<std::pair<std::string, double>> select;  ///< dimension -> coordinate value (nearest within 1e-6 relative)
+  std::optional<std::pair<std::string, std::string>> period;  ///< ISO dates, both inclusive
+  std::optional<std::array<double, 4>> box;                   ///< west, south, east, north in degrees
   struct Mask {
     std::string file, variable;
     std::optional<double> min, max;
@@ -40,7 +40,8 @@ struct InputRequest {
 
 /// Opens the files, joins them along time, and returns a source of their values. Metadata only; no data values are read
 /// (except coordinates, the mask, and the overlapping steps that two files share, which are compared).
-/// Throws Error{input} naming file, variable and remedy. Files are NetCDF (any kind) or, by the name's end, .csv/.txt panels.
+/// Throws Error{input} naming file, variable and remedy. Files are NetCDF (any kind) or, by the name's end, .csv/.txt
+/// panels.
 [[nodiscard]] std::unique_ptr<TileSource> open_archive(const InputRequest& request, const Log& log);
 
 }  // namespace lagscape
