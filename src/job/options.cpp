@@ -98,7 +98,7 @@ constexpr std::array kOptions = {
               "whole number",
               "30",
               "",
-              {3, 1e9},
+              {3, kInfinity},
               "values",
               "Cells with fewer valid values have no estimates."},
 

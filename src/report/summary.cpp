@@ -68,6 +68,13 @@ std::string spread_line(std::string_view label, std::string_view unit, const Spr
                      figure(spread.high), grouped(spread.count), unit);
 }
 
+/// The median decorrelation time as "4.32 months (0.36 years)".
+std::string time_in_two_units(const RunReport& report) {
+  const std::string years = fmt::format("{} years", figure(report.decorrelation_years_median));
+  if (report.lag_unit == "year") return years;
+  return fmt::format("{} {}s ({})", figure(report.decorrelation_time.median), report.lag_unit, years);
+}
+
 std::string memory_text(const RunReport& report) {
   std::string out = fmt::format("\n{:<32}{:>9} {:>9} {:>9} {:>10}  {}\n", "Memory", "5 %", "median", "95 %",
                                 fmt::format("{}s", place_noun(report.plan.panel)), "unit");
@@ -77,10 +84,9 @@ std::string memory_text(const RunReport& report) {
   const Spread& time = report.decorrelation_time;
   const Spread& size = report.effective_sample_size;
   if (time.count > 0 && size.count > 0) {
-    const std::string text =
-        fmt::format("In the median {} {} steps are worth {} independent values; a new one takes {} years.",
-                    place_noun(report.plan.panel), grouped(report.plan.panel.axis.size()), figure(size.median),
-                    figure(report.decorrelation_years_median));
+    const std::string text = fmt::format(
+        "In the median {} {} steps are worth {} independent values; a new one takes {}.", place_noun(report.plan.panel),
+        grouped(report.plan.panel.axis.size()), figure(size.median), time_in_two_units(report));
     out += "  " + wrapped(text, kReportWidth, 2, 2) + "\n";
   }
   if (report.order_uncorrected > 0) {
@@ -259,9 +265,9 @@ std::string summary_text(const RunReport& report) {
   out += result_text(report);
   out += "\n" + paragraph("Take care", kCaution);
   const double rate = report.wall_seconds > 0 ? static_cast<double>(report.plan.cells) / report.wall_seconds : 0;
-  out += fmt::format("\nlagscape {}: {} in {}, {} cells/s, {} of memory\n", LAGSCAPE_VERSION,
-                     counted(report.plan.cells, "cell"), duration_words(report.wall_seconds),
-                     grouped(static_cast<std::size_t>(rate + 0.5)),
+  out += fmt::format("\nlagscape {}: {} in {}, {} {}s/s, {} of memory\n", LAGSCAPE_VERSION,
+                     counted(report.plan.cells, place_noun(report.plan.panel)), duration_words(report.wall_seconds),
+                     grouped(static_cast<std::size_t>(rate + 0.5)), place_noun(report.plan.panel),
                      human_bytes(static_cast<double>(report.peak_rss_bytes)));
   return out;
 }

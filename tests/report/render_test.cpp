@@ -47,7 +47,7 @@ Memory                                5 %    median      95 %      cells  unit
   effective sample size              24.1       111     1 234          4  values
   autocorrelation at lag 1           0.31     0.612      0.93          4  1
   In the median cell 480 steps are worth 111 independent values; a new one takes
-  0.36 years.
+  4.32 months (0.36 years).
   In 1 cell the autoregression has order 4 or more: no correction for
   small-sample bias there.
 
