@@ -1,10 +1,10 @@
 #include "lagscape/base/text.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <cctype>
 #include <charconv>
 #include <cmath>
-#include <fmt/format.h>
 #include <limits>
 #include <numeric>
 
@@ -19,7 +19,8 @@ std::string_view trim(std::string_view text) {
 
 std::string lower(std::string_view text) {
   std::string out(text);
-  std::transform(out.begin(), out.end(), out.begin(), [](unsigned char c) { return static_cast<char>(std::tolower(c)); });
+  std::transform(out.begin(), out.end(), out.begin(),
+                 [](unsigned char c) { return static_cast<char>(std::tolower(c)); });
   return out;
 }
 
@@ -112,20 +113,30 @@ std::string human_bytes(double bytes) {
 std::optional<std::size_t> parse_bytes(std::string_view text) {
   text = trim(text);
   std::size_t digits = 0;
-  while (digits < text.size() && (std::isdigit(static_cast<unsigned char>(text[digits])) != 0 || text[digits] == '.')) ++digits;
+  while (digits < text.size() && (std::isdigit(static_cast<unsigned char>(text[digits])) != 0 || text[digits] == '.'))
+    ++digits;
   const auto number = to_number(text.substr(0, digits));
   if (!number || *number <= 0) return std::nullopt;
   const std::string unit = lower(trim(text.substr(digits)));
   double factor = 0;
-  if (unit.empty() || unit == "b") factor = 1;
-  else if (unit == "k" || unit == "kib") factor = 1024.0;
-  else if (unit == "kb") factor = 1e3;
-  else if (unit == "m" || unit == "mib") factor = 1024.0 * 1024;
-  else if (unit == "mb") factor = 1e6;
-  else if (unit == "g" || unit == "gib") factor = 1024.0 * 1024 * 1024;
-  else if (unit == "gb") factor = 1e9;
-  else if (unit == "t" || unit == "tib") factor = 1024.0 * 1024 * 1024 * 1024;
-  else if (unit == "tb") factor = 1e12;
+  if (unit.empty() || unit == "b")
+    factor = 1;
+  else if (unit == "k" || unit == "kib")
+    factor = 1024.0;
+  else if (unit == "kb")
+    factor = 1e3;
+  else if (unit == "m" || unit == "mib")
+    factor = 1024.0 * 1024;
+  else if (unit == "mb")
+    factor = 1e6;
+  else if (unit == "g" || unit == "gib")
+    factor = 1024.0 * 1024 * 1024;
+  else if (unit == "gb")
+    factor = 1e9;
+  else if (unit == "t" || unit == "tib")
+    factor = 1024.0 * 1024 * 1024 * 1024;
+  else if (unit == "tb")
+    factor = 1e12;
   if (factor == 0) return std::nullopt;
   const double bytes = *number * factor;
   if (bytes < 1 || bytes > 9e18) return std::nullopt;

@@ -13,8 +13,9 @@ bool dimensionless(std::string_view unit) {
 }
 
 std::string difference_unit(std::string_view unit) {
-  static constexpr std::array<std::string_view, 10> celsius = {"degc",    "deg_c",          "celsius",        "degrees_c", "degree_c",
-                                                               "degreec", "degree_celsius", "degrees_celsius", "degreesc", "deg c"};
+  static constexpr std::array<std::string_view, 10> celsius = {
+      "degc",    "deg_c",          "celsius",         "degrees_c", "degree_c",
+      "degreec", "degree_celsius", "degrees_celsius", "degreesc",  "deg c"};
   const std::string name = lower(trim(unit));
   if (std::find(celsius.begin(), celsius.end(), name) != celsius.end()) return "K";
   return dimensionless(unit) ? "1" : std::string(trim(unit));

@@ -12,10 +12,11 @@ std::vector<Measure> memory_measures() {
        .meaning = "Correlation of the prepared series with itself one step later, as computed.",
        .formula = "r(1) = c(1)/c(0), c(k) = S(k)/(nu(k) + k), S over valid pairs, nu their number",
        .source = "Box & Jenkins 1970, Time Series Analysis, ch. 2; gaps as in base R acf(na.action = na.pass)",
-       .cautions =
-           "Biased towards zero in short records, by about (1 + 3 r)/n and more when season and trend are fitted.",
+       .cautions = "Biased towards zero in short records, by about (1 + 3 r)/n and more when season and trend are "
+                   "fitted. With gaps it can pass "
+                   "1 by a little.",
        .ancillary = "status",
-       .valid_range = {-1, 1},
+
        .value = [](const CellResult& cell) { return cell.lag1; }},
       {.name = "lag1_autocorrelation_corrected",
        .group = MapGroup::memory,

@@ -207,6 +207,11 @@ ArModel bias_corrected(const ArModel& raw, double values, std::span<const Design
   if (p == 0 || raw.order > kCorrectedOrders) return raw;
   ArModel model = raw;
   if (!inside_bounds(raw)) {
+    // Gaps can lift a sample r(1) to 1 and beyond, where no first-order model exists.
+    if (p == 1 && std::abs(raw.coefficient[0]) >= 1) {
+      const double bound[] = {std::copysign(kFirstOrderBound, raw.coefficient[0])};
+      model = model_from_coefficients(bound);
+    }
     model.near_unit_root = true;
     return model;
   }

@@ -19,8 +19,8 @@ double dot(const double* a, const double* b, std::size_t steps) {
 
 Design::Design(const DesignColumns& in) : group_(in.group), groups_(in.groups), frequencies_(in.frequencies) {
   const std::size_t n = in.steps;
-  group_steps_.assign(groups_, 0.0);
-  for (const std::uint16_t g : group_) group_steps_[g] += 1;
+  std::vector<double> group_steps(groups_, 0.0);
+  for (const std::uint16_t g : group_) group_steps[g] += 1;
 
   std::vector<std::vector<double>> raw = in.season;
   const auto degree = static_cast<std::size_t>(in.trend_degree);
@@ -40,7 +40,7 @@ Design::Design(const DesignColumns& in) : group_(in.group), groups_(in.groups), 
     std::vector<double>& column = raw[source];
     std::vector<double> means(groups_, 0.0);
     for (std::size_t t = 0; t < n; ++t) means[group_[t]] += column[t];
-    for (std::size_t t = 0; t < n; ++t) column[t] -= means[group_[t]] / group_steps_[group_[t]];
+    for (std::size_t t = 0; t < n; ++t) column[t] -= means[group_[t]] / group_steps[group_[t]];
     const double length = std::sqrt(dot(column.data(), column.data(), n));
     const bool trend = source >= in.season.size();
     const std::size_t trend_index = trend ? source - in.season.size() : 0;

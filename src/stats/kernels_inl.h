@@ -248,39 +248,61 @@ void lag_products(const double* d, size_t steps, size_t first, size_t count, dou
   }
 }
 
+/// Sums of one order of Burg's recursion, for the lanes of one register.
+struct BurgSums {
+  V product{}, forward{}, backward{}, count{};
+  inline void add(V ahead, V behind, unsigned valid, size_t lane0) {
+    const V f = keep(ahead, valid, lane0), b = keep(behind, valid, lane0);
+    product = fma(f, b, product);
+    forward = fma(f, f, forward);
+    backward = fma(b, b, backward);
+    count += keep(all(1.0), valid, lane0);
+  }
+};
+
 void burg(const double* d, const uint8_t* bits, size_t steps, size_t orders, double* work, uint8_t* window,
           double* partial, double* usable) noexcept {
   double* forward = work;
   double* backward = work + steps * kLanes;
-  for (size_t i = 0; i < steps * kLanes; ++i) forward[i] = backward[i] = d[i];
-  for (size_t t = 0; t < steps; ++t) window[t] = bits[t];
-  const V one = all(1.0), zero{};
-  for (size_t order = 1; order <= orders; ++order) {
-    // From here on, step t counts only where x[t - order] .. x[t] are all valid.
+  // Before the sums of an order, step t counts only where x[t - order] .. x[t] are all valid.
+  const auto narrow = [&](size_t order) {
     for (size_t t = steps; t-- > 0;)
       window[t] = t < order ? uint8_t{0} : static_cast<uint8_t>(window[t] & bits[t - order]);
-    for (size_t lane0 = 0; lane0 < kLanes; lane0 += kWidth) {
-      V product{}, forward_power{}, backward_power{}, count{};
-      for (size_t t = order; t < steps; ++t) {
-        const V ahead = keep(load(forward + t * kLanes + lane0), window[t], lane0);
-        const V behind = keep(load(backward + (t - 1) * kLanes + lane0), window[t], lane0);
-        product = fma(ahead, behind, product);
-        forward_power = fma(ahead, ahead, forward_power);
-        backward_power = fma(behind, behind, backward_power);
-        count += keep(one, window[t], lane0);
-      }
-      const V power = forward_power + backward_power;
-      const V k = power > zero ? (product + product) / power : zero;
+  };
+  for (size_t i = 0; i < steps * kLanes; ++i) forward[i] = backward[i] = d[i];
+  for (size_t t = 0; t < steps; ++t) window[t] = bits[t];
+  narrow(1);
+  constexpr size_t kRegisters = kLanes / kWidth;
+  BurgSums sums[kRegisters];
+  for (size_t part = 0; part < kRegisters; ++part) {
+    const size_t lane0 = part * kWidth;
+    for (size_t t = 1; t < steps; ++t) {
+      sums[part].add(load(d + t * kLanes + lane0), load(d + (t - 1) * kLanes + lane0), window[t], lane0);
+    }
+  }
+  const V zero{};
+  for (size_t order = 1; order <= orders; ++order) {
+    narrow(order + 1);
+    for (size_t part = 0; part < kRegisters; ++part) {
+      const size_t lane0 = part * kWidth;
+      const BurgSums found = sums[part];
+      const V power = found.forward + found.backward;
+      const V k = power > zero ? (found.product + found.product) / power : zero;
       store(partial + (order - 1) * kLanes + lane0, k);
-      store(usable + (order - 1) * kLanes + lane0, count);
-      V behind = load(backward + (order - 1) * kLanes + lane0);
+      store(usable + (order - 1) * kLanes + lane0, found.count);
+      // One pass updates both errors and sums the next order: the error behind is the new one of the step before.
+      BurgSums next;
+      V behind = load(backward + (order - 1) * kLanes + lane0), new_behind{};
       for (size_t t = order; t < steps; ++t) {
-        const V ahead = load(forward + t * kLanes + lane0);
-        const V next = load(backward + t * kLanes + lane0);
-        store(forward + t * kLanes + lane0, fma(-k, behind, ahead));
-        store(backward + t * kLanes + lane0, fma(-k, ahead, behind));
-        behind = next;
+        const V ahead = load(forward + t * kLanes + lane0), then = load(backward + t * kLanes + lane0);
+        const V new_ahead = fma(-k, behind, ahead);
+        next.add(new_ahead, new_behind, window[t], lane0);
+        new_behind = fma(-k, ahead, behind);
+        store(forward + t * kLanes + lane0, new_ahead);
+        store(backward + t * kLanes + lane0, new_behind);
+        behind = then;
       }
+      sums[part] = next;
     }
   }
 }

@@ -13,7 +13,8 @@ enum class ErrorKind : int { internal = 1, usage = 2, job = 3, input = 4, output
 /// A cell that cannot be computed is not an error but a status bit.
 class Error : public std::exception {
  public:
-  /// problem: one sentence without a final stop. where: "file: obs.nc, variable: sst" or "job.toml:4:1". fix: what to do.
+  /// problem: one sentence without a final stop. where: "file: obs.nc, variable: sst" or "job.toml:4:1". fix: what to
+  /// do.
   Error(ErrorKind kind, std::string problem, std::string where = {}, std::string fix = {});
   [[nodiscard]] ErrorKind kind() const noexcept { return kind_; }
   [[nodiscard]] int exit_code() const noexcept { return static_cast<int>(kind_); }

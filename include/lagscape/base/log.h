@@ -8,8 +8,12 @@ namespace lagscape {
 struct Log {
   enum class Level { note, warning };
   std::function<void(Level, const std::string&)> sink;
-  void note(const std::string& text) const { if (sink) sink(Level::note, text); }
-  void warn(const std::string& text) const { if (sink) sink(Level::warning, text); }
+  void note(const std::string& text) const {
+    if (sink) sink(Level::note, text);
+  }
+  void warn(const std::string& text) const {
+    if (sink) sink(Level::warning, text);
+  }
 };
 
 }  // namespace lagscape

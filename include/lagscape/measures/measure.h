@@ -14,24 +14,25 @@ struct CellResult;  // measures/cell_result.h: everything the stages computed fo
 
 /// How a map's unit follows from the input's unit and the time axis.
 enum class UnitRule {
-  one,              ///< "1"
-  none,             ///< flags: no unit
-  input,            ///< the variable's unit
-  input_difference, ///< its difference ("degC" -> "K")
+  one,               ///< "1"
+  none,              ///< flags: no unit
+  input,             ///< the variable's unit
+  input_difference,  ///< its difference ("degC" -> "K")
   input_squared,
-  input_rate,       ///< difference per year or decade
-  lag_time,         ///< unit of the lag axis (day, month, ...)
-  calendar_time,    ///< "days since ..." with calendar
+  input_rate,     ///< difference per year or decade
+  lag_time,       ///< unit of the lag axis (day, month, ...)
+  calendar_time,  ///< "days since ..." with calendar
 };
 
 /// Groups by which maps are chosen in `output.maps` and listed in help.
 enum class MapGroup { record, memory, effective_size, trend, cubes };
 
-/// One map or cube: the single place from which file attributes, `explain`, `plan`, the README table and `output.maps` follow.
+/// One map or cube: the single place from which file attributes, `explain`, `plan`, the README table and `output.maps`
+/// follow.
 struct Measure {
   std::string_view name;
   MapGroup group;
-  bool standard;               ///< belongs to the group "standard"
+  bool standard;  ///< belongs to the group "standard"
   MapType type = MapType::f32;
   LayerAxis axis = LayerAxis::none;
   UnitRule unit = UnitRule::one;
@@ -42,8 +43,8 @@ struct Measure {
   std::string_view cautions;   ///< may be empty
   std::string_view standard_name = {};
   std::string_view cell_methods = {};
-  std::string_view ancillary = {};      ///< blank-separated map names
-  std::vector<double> valid_range = {}; ///< true bounds only
+  std::string_view ancillary = {};       ///< blank-separated map names
+  std::vector<double> valid_range = {};  ///< true bounds only
   /// Picks the value from what the stages computed. Exactly one of these is set; cubes fill `layers`.
   double (*value)(const CellResult&) = nullptr;
   void (*layers)(const CellResult&, std::span<float> layers) = nullptr;
@@ -52,7 +53,7 @@ struct Measure {
 /// All measures, in the order in which they are listed and written.
 [[nodiscard]] const std::vector<Measure>& measure_catalog();
 [[nodiscard]] const Measure* find_measure(std::string_view name);
-[[nodiscard]] std::string_view group_name(MapGroup group);          ///< "record", "memory", "effective-size", "trend", "cubes"
+[[nodiscard]] std::string_view group_name(MapGroup group);  ///< "record", "memory", "effective-size", "trend", "cubes"
 /// Words accepted in output.maps: "standard", "all", the group names, the names of maps that are not cubes.
 [[nodiscard]] std::vector<std::string> map_words();
 /// Words accepted in output.cubes: names of cubes.

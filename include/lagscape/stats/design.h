@@ -40,8 +40,6 @@ class Design {
   [[nodiscard]] std::size_t groups() const noexcept { return groups_; }
   [[nodiscard]] std::size_t dense() const noexcept { return dense_; }
   [[nodiscard]] std::size_t trend_columns() const noexcept { return trend_columns_; }
-  /// Steps in each group of the complete record.
-  [[nodiscard]] const std::vector<double>& group_steps() const noexcept { return group_steps_; }
   /// Raw trend terms, one after the other: time in steps from the middle of the record, and its square less its mean.
   [[nodiscard]] const double* trend_terms() const noexcept { return trend_terms_.data(); }
   /// Raw trend coefficients follow from the effects of the last orthonormal columns: upper triangle, trend_columns
@@ -55,7 +53,7 @@ class Design {
   std::vector<std::uint16_t> group_;
   std::size_t groups_ = 1, dense_ = 0, trend_columns_ = 0;
   AlignedVector<double> columns_;
-  std::vector<double> trend_terms_, triangle_, group_steps_;
+  std::vector<double> trend_terms_, triangle_;
   std::vector<DesignFrequency> frequencies_;
 };
 
