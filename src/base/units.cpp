@@ -28,7 +28,7 @@ std::string rate_unit(std::string_view unit, std::string_view per) {
 }
 
 std::string squared_unit(std::string_view unit) {
-  const std::string base = difference_unit(unit);
+  std::string base = difference_unit(unit);
   if (base == "1") return base;
   const bool simple = std::all_of(base.begin(), base.end(), [](unsigned char c) { return std::isalpha(c) != 0; });
   return simple ? base + "2" : "(" + base + ")2";

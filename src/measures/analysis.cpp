@@ -383,7 +383,7 @@ void Analysis::Impl::fit_memory(std::size_t lane) noexcept {
   const OrderChoice choice{settings.criterion, settings.fixed_order, m, fit.parameters[lane]};
   const int order = choose_order({k.data(), orders}, largest, choice);
   if (order == 0) {
-    flag(lane, kManyGaps);  // no order has enough gap-free stretches
+    flag(lane, m < n ? kManyGaps : kTooFew);  // not even the first order has enough gap-free terms
     return;
   }
   const auto p = static_cast<std::size_t>(order);

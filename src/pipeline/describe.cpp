@@ -29,11 +29,11 @@ std::string unit_of(UnitRule rule, const JobPlan& plan) {
     case UnitRule::input:
       return plain;
     case UnitRule::input_difference:
-      return dimensionless(input) ? "1" : difference_unit(input);
+      return difference_unit(input);
     case UnitRule::input_squared:
-      return squared_unit(difference_unit(input));
+      return squared_unit(input);
     case UnitRule::input_rate:
-      return rate_unit(difference_unit(input), plan.job.trend.per == RatePer::decade ? "decade" : "year");
+      return rate_unit(input, plan.job.trend.per == RatePer::decade ? "decade" : "year");
     case UnitRule::lag_time:
       return axis.lag_unit();
     case UnitRule::calendar_time:
