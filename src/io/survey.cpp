@@ -16,7 +16,8 @@
 namespace lagscape {
 namespace {
 
-constexpr std::size_t kSamples = 4;
+constexpr std::size_t kFewestSteps = 4, kMostSteps = 400;      // sampled
+constexpr std::size_t kEnoughValues = 200'000;                 // in the sampled steps together, where maps are small
 constexpr std::size_t kSampleBytes = std::size_t{256} << 20U;  // decompressed for one sampled step, at most
 constexpr double kAlmostAll = 0.99;
 
@@ -136,7 +137,8 @@ Sample take_sample(const ArchivePlan& plan) {
   const CellRange cells = sample_cells(plan);
   StepReader reader(plan);
   Sample sample;
-  const std::size_t stored = plan.holders.size(), wanted = std::min(kSamples, stored);
+  const std::size_t stored = plan.holders.size();
+  const std::size_t wanted = std::min(stored, std::clamp(kEnoughValues / cells.count, kFewestSteps, kMostSteps));
   for (std::size_t i = 0; i < wanted; ++i) {
     const Holder& holder = plan.holders[wanted == 1 ? 0 : i * (stored - 1) / (wanted - 1)];
     for (const double value :

@@ -99,6 +99,19 @@ TEST(Survey, SaysWhatIsOddAboutValues) {
   EXPECT_TRUE(quirk(report, "rejects nearly all values"));
 }
 
+TEST(Survey, LongRecordIsSampledEvenlyFromItsFirstToItsLastStep) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  constexpr std::size_t kLength = 4000;
+  const auto [t, y, x] = grid_axes(s, kLength, "days since 2001-01-01");
+  std::vector<double> values(kLength * 6, 1);
+  std::fill(values.begin() + kLength * 3, values.end(), NC_FILL_FLOAT);  // the second half of the record
+  s.put(s.var("wetness", NC_FLOAT, {t, y, x}), values);
+  const SurveyReport report = survey_files({s.close()}, "", {});
+  EXPECT_EQ(named(report, "wetness").sampled_steps, 400U);
+  EXPECT_NEAR(named(report, "wetness").missing_share, 0.5, 0.005);
+}
+
 TEST(Survey, CsvPanelIsReadWhole) {
   const Folder folder;
   std::ofstream(folder / "gauges.csv") << "# unit: m3 s-1\ndate,Alder,Birch\n2001-01-01,1,\n2001-01-02,2,5\n";
