@@ -16,9 +16,9 @@
 namespace lagscape {
 namespace {
 
-constexpr std::size_t kFewestSteps = 4, kMostSteps = 400;      // sampled
-constexpr std::size_t kEnoughValues = 200'000;                 // in the sampled steps together, where maps are small
-constexpr std::size_t kSampleBytes = std::size_t{256} << 20U;  // decompressed for one sampled step, at most
+constexpr std::size_t kFewestSteps = 4, kMostSteps = 400;     // sampled
+constexpr std::size_t kEnoughValues = 200'000;                // in the sampled steps together, where maps are small
+constexpr std::size_t kSampleBytes = std::size_t{64} << 20U;  // decompressed for one sampled step, at most
 constexpr double kAlmostAll = 0.99;
 
 void add_quirk(SurveyReport& report, const std::string& quirk) {
