@@ -138,7 +138,9 @@ Sample take_sample(const ArchivePlan& plan) {
   StepReader reader(plan);
   Sample sample;
   const std::size_t stored = plan.holders.size();
-  const std::size_t wanted = std::min(stored, std::clamp(kEnoughValues / cells.count, kFewestSteps, kMostSteps));
+  const bool whole_maps = cells.count == plan.panel.geometry.cells();  // else each step is costly
+  const std::size_t most = whole_maps ? kMostSteps : kFewestSteps;
+  const std::size_t wanted = std::min(stored, std::clamp(kEnoughValues / cells.count, kFewestSteps, most));
   for (std::size_t i = 0; i < wanted; ++i) {
     const Holder& holder = plan.holders[wanted == 1 ? 0 : i * (stored - 1) / (wanted - 1)];
     for (const double value :
