@@ -154,9 +154,19 @@ struct TomlReader::Impl {
     return 0;
   }
 
+  /// The same for a table that stands in no file because an override made it.
+  [[nodiscard]] std::size_t making_override(const std::string& table) const {
+    const auto made = std::find_if(overrides.begin(), overrides.end(),
+                                   [&](const Override& one) { return starts_with(one.key, table + "."); });
+    return made == overrides.end() ? 0 : static_cast<std::size_t>(made - overrides.begin()) + 1;
+  }
+
   void note(const std::string& key, toml::source_position at, const std::string& text) {
-    const std::size_t rank = override_rank(key);
-    if (at.line == 0) at = {1, 1};
+    std::size_t rank = override_rank(key);
+    if (at.line == 0) {
+      if (rank == 0) rank = making_override(key);
+      at = {1, 1};
+    }
     std::string line = rank > 0 ? fmt::format("--set {}: {}", overrides[rank - 1].key, text)
                                 : fmt::format("{}:{}:{}: {}", file, at.line, at.column, text);
     problems.push_back({rank, at, std::move(line)});

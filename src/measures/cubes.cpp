@@ -20,7 +20,7 @@ std::vector<Measure> cube_measures() {
        .long_name = "autocorrelation",
        .meaning = "Correlation of the prepared series with itself, lag by lag; 1 at lag 0.",
        .formula = "r(k) = c(k)/c(0), c(k) = S(k)/(nu(k) + k)",
-       .source = "Box & Jenkins 1970, Time Series Analysis, ch. 2; gaps as in base R acf(na.action = na.pass)",
+       .source = "Box & Jenkins 1970, Time Series Analysis, ch. 2; with gaps the sum over valid pairs by nu(k) + k",
        .cautions = "Missing at lags with fewer than max(10, m/10) pairs.",
        .ancillary = "autocorrelation_limit status",
        .layers = copy_lags<&CellResult::autocorrelation>},

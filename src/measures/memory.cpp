@@ -11,7 +11,7 @@ std::vector<Measure> memory_measures() {
        .long_name = "autocorrelation at lag 1",
        .meaning = "Correlation of the prepared series with itself one step later, as computed.",
        .formula = "r(1) = c(1)/c(0), c(k) = S(k)/(nu(k) + k), S over valid pairs, nu their number",
-       .source = "Box & Jenkins 1970, Time Series Analysis, ch. 2; gaps as in base R acf(na.action = na.pass)",
+       .source = "Box & Jenkins 1970, Time Series Analysis, ch. 2; with gaps the sum over valid pairs by nu(k) + k",
        .cautions = "Biased towards zero in short records, by about (1 + 3 r)/n and more when season and trend are "
                    "fitted. With gaps it can pass "
                    "1 by a little.",
