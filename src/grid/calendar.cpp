@@ -1,9 +1,9 @@
 #include "lagscape/grid/calendar.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <array>
 #include <charconv>
-#include <fmt/format.h>
 
 #include "lagscape/base/text.h"
 
@@ -29,9 +29,13 @@ constexpr bool before(const Date& a, const Date& b) {
 }
 
 // The calendars that count BC years have no year 0: -1 is followed by 1.
-constexpr bool has_year_zero(Calendar calendar) { return calendar != Calendar::standard && calendar != Calendar::julian; }
+constexpr bool has_year_zero(Calendar calendar) {
+  return calendar != Calendar::standard && calendar != Calendar::julian;
+}
 // With a year 0 put in.
-constexpr int astronomical_year(Calendar calendar, int year) { return year < 0 && !has_year_zero(calendar) ? year + 1 : year; }
+constexpr int astronomical_year(Calendar calendar, int year) {
+  return year < 0 && !has_year_zero(calendar) ? year + 1 : year;
+}
 constexpr int written_year(Calendar calendar, std::int64_t astronomical) {
   return static_cast<int>(astronomical <= 0 && !has_year_zero(calendar) ? astronomical - 1 : astronomical);
 }
@@ -71,7 +75,9 @@ Date julian_date(Calendar calendar, std::int64_t day) {
 }
 
 // The calendars whose years are all alike.
-int fixed_year_days(Calendar calendar) { return calendar == Calendar::noleap ? 365 : calendar == Calendar::all_leap ? 366 : 360; }
+int fixed_year_days(Calendar calendar) {
+  return calendar == Calendar::noleap ? 365 : calendar == Calendar::all_leap ? 366 : 360;
+}
 
 int fixed_month_days(Calendar calendar, int month) {
   if (calendar == Calendar::day360) return 30;
@@ -103,12 +109,18 @@ std::optional<Calendar> parse_calendar(std::string_view name) {
 
 std::string_view calendar_name(Calendar calendar) {
   switch (calendar) {
-    case Calendar::standard: return "standard";
-    case Calendar::proleptic_gregorian: return "proleptic_gregorian";
-    case Calendar::julian: return "julian";
-    case Calendar::noleap: return "noleap";
-    case Calendar::all_leap: return "all_leap";
-    case Calendar::day360: break;
+    case Calendar::standard:
+      return "standard";
+    case Calendar::proleptic_gregorian:
+      return "proleptic_gregorian";
+    case Calendar::julian:
+      return "julian";
+    case Calendar::noleap:
+      return "noleap";
+    case Calendar::all_leap:
+      return "all_leap";
+    case Calendar::day360:
+      break;
   }
   return "360_day";
 }
@@ -139,7 +151,8 @@ std::int64_t day_number(Calendar calendar, Date date) {
   }
   const int year = astronomical_year(calendar, date.year);
   if (calendar == Calendar::julian) return julian_day(year, date.month, date.day);
-  if (calendar == Calendar::standard && before(date, kSwitchDate)) return julian_day(year, date.month, date.day) + kJulianDelay;
+  if (calendar == Calendar::standard && before(date, kSwitchDate))
+    return julian_day(year, date.month, date.day) + kJulianDelay;
   return gregorian_day(year, date.month, date.day);
 }
 
@@ -161,7 +174,9 @@ double mean_year_days(Calendar calendar) {
   return calendar == Calendar::julian ? 365.25 : 365.2425;
 }
 
-Seconds seconds_of(Calendar calendar, Date date, Seconds time_of_day) { return day_number(calendar, date) * kDay + time_of_day; }
+Seconds seconds_of(Calendar calendar, Date date, Seconds time_of_day) {
+  return day_number(calendar, date) * kDay + time_of_day;
+}
 
 Moment moment_of(Calendar calendar, Seconds time) {
   const std::int64_t day = floor_div(time, kDay);

@@ -1,7 +1,7 @@
 #include "lagscape/grid/geometry.h"
 
-#include <cmath>
 #include <fmt/format.h>
+#include <cmath>
 #include <limits>
 #include <span>
 
@@ -37,7 +37,8 @@ std::string range(const std::string& name, std::span<const double> values, const
 }  // namespace
 
 std::string Geometry::describe_cell(std::size_t cell) const {
-  if (is_sites()) return cell < site_names.size() ? fmt::format("site '{}'", site_names[cell]) : fmt::format("site {}", cell);
+  if (is_sites())
+    return cell < site_names.size() ? fmt::format("site '{}'", site_names[cell]) : fmt::format("site {}", cell);
   const std::size_t row = cell / cols, col = cell % cols;
   const std::string place = fmt::format("row {}, col {}", row, col);
   if (kind == GeometryKind::latlon) return fmt::format("{} ({})", place, degrees(y.values[row], x.values[col]));

@@ -1,8 +1,8 @@
 #include "lagscape/grid/time_axis.h"
 
+#include <fmt/format.h>
 #include <array>
 #include <cctype>
-#include <fmt/format.h>
 
 #include "lagscape/base/text.h"
 
@@ -40,13 +40,20 @@ double spoken_count(Seconds step) { return static_cast<double>(step) / static_ca
 // One "12H" of a duration: unit and count of seconds, months or years; nothing for an unknown letter.
 std::optional<TimeStep> duration_part(std::int64_t count, char letter, bool clock) {
   switch (std::toupper(static_cast<unsigned char>(letter))) {
-    case 'Y': return clock ? std::nullopt : std::optional(TimeStep{StepKind::years, count});
-    case 'M': return clock ? TimeStep{StepKind::seconds, count * 60} : TimeStep{StepKind::months, count};
-    case 'W': return clock ? std::nullopt : std::optional(TimeStep{StepKind::seconds, count * 7 * kDay});
-    case 'D': return clock ? std::nullopt : std::optional(TimeStep{StepKind::seconds, count * kDay});
-    case 'H': return clock ? std::optional(TimeStep{StepKind::seconds, count * 3600}) : std::nullopt;
-    case 'S': return clock ? std::optional(TimeStep{StepKind::seconds, count}) : std::nullopt;
-    default: return std::nullopt;
+    case 'Y':
+      return clock ? std::nullopt : std::optional(TimeStep{StepKind::years, count});
+    case 'M':
+      return clock ? TimeStep{StepKind::seconds, count * 60} : TimeStep{StepKind::months, count};
+    case 'W':
+      return clock ? std::nullopt : std::optional(TimeStep{StepKind::seconds, count * 7 * kDay});
+    case 'D':
+      return clock ? std::nullopt : std::optional(TimeStep{StepKind::seconds, count * kDay});
+    case 'H':
+      return clock ? std::optional(TimeStep{StepKind::seconds, count * 3600}) : std::nullopt;
+    case 'S':
+      return clock ? std::optional(TimeStep{StepKind::seconds, count}) : std::nullopt;
+    default:
+      return std::nullopt;
   }
 }
 
@@ -64,7 +71,8 @@ std::optional<TimeStep> parse_duration(std::string_view text) {
     }
     std::int64_t count = 0;
     const std::size_t first = at;
-    for (; at < text.size() && std::isdigit(static_cast<unsigned char>(text[at])) != 0; ++at) count = count * 10 + (text[at] - '0');
+    for (; at < text.size() && std::isdigit(static_cast<unsigned char>(text[at])) != 0; ++at)
+      count = count * 10 + (text[at] - '0');
     if (at == first || at - first > 9 || at == text.size()) return std::nullopt;
     const auto part = duration_part(count, text[at++], clock);
     if (!part || (total && total->kind != part->kind)) return std::nullopt;
@@ -91,7 +99,8 @@ std::string step_words(TimeStep step) {
 
 TimeAxis::TimeAxis(Calendar calendar, TimeStep step, Seconds origin, std::size_t size, int day_of_month)
     : calendar_(calendar), step_(step), origin_(origin), size_(size) {
-  if (step.kind != StepKind::seconds) day_of_month_ = day_of_month > 0 ? day_of_month : moment_of(calendar, origin).date.day;
+  if (step.kind != StepKind::seconds)
+    day_of_month_ = day_of_month > 0 ? day_of_month : moment_of(calendar, origin).date.day;
 }
 
 Seconds TimeAxis::nominal(std::int64_t index) const {

@@ -1,9 +1,9 @@
 #include "io/csv_panel.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <cmath>
 #include <filesystem>
-#include <fmt/format.h>
 #include <limits>
 #include <map>
 #include <set>
@@ -35,10 +35,10 @@ double read_number(const CsvReader& reader, std::size_t column) {
   std::string pointed(text);
   std::replace(pointed.begin(), pointed.end(), ',', '.');
   if (pointed != text && to_number(pointed))
-    throw Error(ErrorKind::input, fmt::format("'{}' has a decimal comma, expected a decimal point", text), reader.where(column),
-                fmt::format("write numbers as {}", pointed));
-  throw Error(ErrorKind::input, fmt::format("'{}' is neither a number nor empty, NA, NaN or null", text), reader.where(column),
-              "correct the cell, or empty it if the value is missing");
+    throw Error(ErrorKind::input, fmt::format("'{}' has a decimal comma, expected a decimal point", text),
+                reader.where(column), fmt::format("write numbers as {}", pointed));
+  throw Error(ErrorKind::input, fmt::format("'{}' is neither a number nor empty, NA, NaN or null", text),
+              reader.where(column), "correct the cell, or empty it if the value is missing");
 }
 
 // ---- one file -------------------------------------------------------------------------------------------------------
@@ -59,17 +59,21 @@ void check_names(const CsvReader& reader) {
   const auto& header = reader.header();
   const std::string where = fmt::format("file: {}:{}", reader.path(), reader.line());
   if (header.size() < 2)
-    throw Error(ErrorKind::input, fmt::format("the header has {} column, expected a date and one column a site", header.size()), where,
+    throw Error(ErrorKind::input,
+                fmt::format("the header has {} column, expected a date and one column a site", header.size()), where,
                 "separate columns by comma, semicolon or tab");
   if (const std::string second = lower(header[1]); second == "month" || second == "day" || second == "hour")
-    throw Error(ErrorKind::input, fmt::format("column 2 is named '{}': the date seems to be spread over several columns", header[1]),
+    throw Error(ErrorKind::input,
+                fmt::format("column 2 is named '{}': the date seems to be spread over several columns", header[1]),
                 where, "write the date into the first column, as 1981-01-31");
   std::set<std::string> seen;
   for (std::size_t c = 1; c < header.size(); ++c) {
     if (header[c].empty())
-      throw Error(ErrorKind::input, fmt::format("column {} has no name", c + 1), where, "name every site in the header");
+      throw Error(ErrorKind::input, fmt::format("column {} has no name", c + 1), where,
+                  "name every site in the header");
     if (!seen.insert(header[c]).second)
-      throw Error(ErrorKind::input, fmt::format("two columns are named '{}'", header[c]), where, "give every site its own name");
+      throw Error(ErrorKind::input, fmt::format("two columns are named '{}'", header[c]), where,
+                  "give every site its own name");
   }
 }
 
@@ -77,24 +81,28 @@ void check_names(const CsvReader& reader) {
 std::string stated_unit(const CsvReader& reader) {
   constexpr std::string_view kKey = "unit:";
   for (const std::string& comment : reader.comments())
-    if (lower(comment.substr(0, kKey.size())) == kKey) return std::string(trim(std::string_view(comment).substr(kKey.size())));
+    if (lower(comment.substr(0, kKey.size())) == kKey)
+      return std::string(trim(std::string_view(comment).substr(kKey.size())));
   return {};
 }
 
 Seconds read_date(const CsvReader& reader, Calendar calendar) {
   const std::string_view text = trim(reader.cells()[0]);
   if (const auto time = parse_iso(calendar, text)) return *time;
-  throw Error(ErrorKind::input,
-              fmt::format("'{}' is not a date of the {} calendar, expected ISO dates such as 1981-01-31 or 1981-01-31T06:00", text,
-                          calendar_name(calendar)),
-              reader.where(0),
-              "write ISO dates in the first column, or, if it holds numbers, tell their unit in the job: [input] time = { unit = "
-              "\"days since 1981-01-01\" }");
+  throw Error(
+      ErrorKind::input,
+      fmt::format("'{}' is not a date of the {} calendar, expected ISO dates such as 1981-01-31 or 1981-01-31T06:00",
+                  text, calendar_name(calendar)),
+      reader.where(0),
+      "write ISO dates in the first column, or, if it holds numbers, tell their unit in the job: [input] time = { unit "
+      "= "
+      "\"days since 1981-01-01\" }");
 }
 
 double read_time_value(const CsvReader& reader) {
   const double value = read_number(reader, 0);
-  if (std::isnan(value)) throw Error(ErrorKind::input, "the time is missing", reader.where(0), "give every row a time, or remove the row");
+  if (std::isnan(value))
+    throw Error(ErrorKind::input, "the time is missing", reader.where(0), "give every row a time, or remove the row");
   return value;
 }
 
@@ -105,7 +113,8 @@ Calendar panel_calendar(const std::optional<InputRequest::TimeMend>& mend) {
               "write for example time = { calendar = \"noleap\" }");
 }
 
-PanelFile read_panel_file(const std::string& path, const std::optional<InputRequest::TimeMend>& mend, std::vector<std::string>& notes) {
+PanelFile read_panel_file(const std::string& path, const std::optional<InputRequest::TimeMend>& mend,
+                          std::vector<std::string>& notes) {
   CsvReader reader(path);
   check_names(reader);
   PanelFile file;
@@ -117,12 +126,15 @@ PanelFile read_panel_file(const std::string& path, const std::optional<InputRequ
   const bool numeric = mend && mend->unit;
   std::vector<double> numbers;
   while (reader.next()) {
-    if (numeric) numbers.push_back(read_time_value(reader));
-    else file.times.times.push_back(read_date(reader, file.times.calendar));
+    if (numeric)
+      numbers.push_back(read_time_value(reader));
+    else
+      file.times.times.push_back(read_date(reader, file.times.calendar));
     file.lines.push_back(reader.line());
     for (std::size_t c = 1; c <= file.sites.size(); ++c) file.values.push_back(read_number(reader, c));
   }
-  if (numeric) file.times = decode_times(path, reader.header()[0], numbers, {*mend->unit, mend->calendar.value_or("")}, notes);
+  if (numeric)
+    file.times = decode_times(path, reader.header()[0], numbers, {*mend->unit, mend->calendar.value_or("")}, notes);
   file.unit = stated_unit(reader);
   return file;
 }
@@ -142,7 +154,8 @@ std::optional<std::size_t> find_column(const CsvReader& reader, std::initializer
 
 std::size_t need_column(const CsvReader& reader, std::initializer_list<const char*> names, const char* what) {
   if (const auto column = find_column(reader, names)) return *column;
-  throw Error(ErrorKind::input, fmt::format("no column holds the {} of the sites (looked for {})", what, fmt::join(names, ", ")),
+  throw Error(ErrorKind::input,
+              fmt::format("no column holds the {} of the sites (looked for {})", what, fmt::join(names, ", ")),
               fmt::format("file: {}:{}", reader.path(), reader.line()),
               "give the file of sites a header such as name,lon,lat");
 }
@@ -150,14 +163,15 @@ std::size_t need_column(const CsvReader& reader, std::initializer_list<const cha
 double read_degrees(const CsvReader& reader, std::size_t column, double low, double high) {
   const double value = read_number(reader, column);
   if (!std::isnan(value) && !(value >= low && value <= high))
-    throw Error(ErrorKind::input, fmt::format("{} is not between {} and {} degrees", value, low, high), reader.where(column),
-                "correct the coordinate, or the header if latitude and longitude are swapped");
+    throw Error(ErrorKind::input, fmt::format("{} is not between {} and {} degrees", value, low, high),
+                reader.where(column), "correct the coordinate, or the header if latitude and longitude are swapped");
   return value;
 }
 
 std::map<std::string, Site> read_sites(const std::string& path, bool& has_altitude) {
   CsvReader reader(path);
-  const std::size_t name = need_column(reader, {"name", "site", "station", "id", "site_name", "station_name", "station_id"}, "name");
+  const std::size_t name =
+      need_column(reader, {"name", "site", "station", "id", "site_name", "station_name", "station_id"}, "name");
   const std::size_t lon = need_column(reader, {"lon", "longitude", "long"}, "longitude");
   const std::size_t lat = need_column(reader, {"lat", "latitude"}, "latitude");
   const auto altitude = find_column(reader, {"altitude", "elevation", "alt", "elev"});
@@ -168,7 +182,8 @@ std::map<std::string, Site> read_sites(const std::string& path, bool& has_altitu
     Site site{read_degrees(reader, lat, -90, 90), read_degrees(reader, lon, -180, 360), kNaN};
     if (altitude) site.altitude = read_number(reader, *altitude);
     if (!sites.emplace(key, site).second)
-      throw Error(ErrorKind::input, fmt::format("site '{}' is listed twice", key), reader.where(name), "keep one line for each site");
+      throw Error(ErrorKind::input, fmt::format("site '{}' is listed twice", key), reader.where(name),
+                  "keep one line for each site");
   }
   return sites;
 }
@@ -189,46 +204,57 @@ void add_coordinates(const std::string& path, Geometry& geometry, std::vector<st
   for (const std::string& name : geometry.site_names) {
     const auto found = known.find(name);
     const Site site = found == known.end() ? Site{} : found->second;
-    if (found == known.end()) unlisted.push_back(name);
-    else if (std::isnan(site.lat) || std::isnan(site.lon)) blank.push_back(name);
+    if (found == known.end())
+      unlisted.push_back(name);
+    else if (std::isnan(site.lat) || std::isnan(site.lon))
+      blank.push_back(name);
     geometry.lat.push_back(site.lat);
     geometry.lon.push_back(site.lon);
     if (has_altitude) geometry.altitude.push_back(site.altitude);
   }
   const std::string list = file_name(path);
   const std::set<std::string> wanted(geometry.site_names.begin(), geometry.site_names.end());
-  std::copy_if(names.begin(), names.end(), std::back_inserter(unused), [&](const std::string& name) { return !wanted.contains(name); });
+  std::copy_if(names.begin(), names.end(), std::back_inserter(unused),
+               [&](const std::string& name) { return !wanted.contains(name); });
   if (unlisted.size() == geometry.site_names.size())
-    throw Error(ErrorKind::input, fmt::format("none of the sites of the panel is listed: the panel has {}, the list has {}",
-                                              some_names(unlisted), names.empty() ? "no line" : some_names(names)),
+    throw Error(ErrorKind::input,
+                fmt::format("none of the sites of the panel is listed: the panel has {}, the list has {}",
+                            some_names(unlisted), names.empty() ? "no line" : some_names(names)),
                 "file: " + path, "use the same names in the header of the panel and in the file of sites");
   if (!unlisted.empty())
     notes.push_back(fmt::format("without coordinates, because {} does not list them: {}{}", list, some_names(unlisted),
                                 did_you_mean(unlisted.front(), unused)));
-  if (!blank.empty()) notes.push_back(fmt::format("without coordinates, because {} leaves them empty: {}", list, some_names(blank)));
+  if (!blank.empty())
+    notes.push_back(fmt::format("without coordinates, because {} leaves them empty: {}", list, some_names(blank)));
   if (!unused.empty()) notes.push_back(fmt::format("listed in {} but in no panel file: {}", list, some_names(unused)));
 }
 
 bool in_box(const std::array<double, 4>& box, double lat, double lon) {
   const double west = box[0], south = box[1], east = box[2], north = box[3];
-  const auto turned = [&](double degrees) { return degrees - 360 * std::floor((degrees - west) / 360); };  // into [west, west + 360)
+  const auto turned = [&](double degrees) {
+    return degrees - 360 * std::floor((degrees - west) / 360);
+  };  // into [west, west + 360)
   return lat >= south && lat <= north && (east - west >= 360 || turned(lon) <= turned(east));
 }
 
 // Drops the sites outside the box, and those of which nobody can say whether they lie in it.
 void cut_to_box(const std::array<double, 4>& box, Geometry& geometry, std::vector<std::string>& notes) {
   if (geometry.lat.empty())
-    throw Error(ErrorKind::job, "[input] box needs the coordinates of the sites", "", "name a file of coordinates: sites = \"sites.csv\"");
+    throw Error(ErrorKind::job, "[input] box needs the coordinates of the sites", "",
+                "name a file of coordinates: sites = \"sites.csv\"");
   std::vector<std::string> unknown;
   std::vector<std::size_t> kept;
   for (std::size_t i = 0; i < geometry.site_names.size(); ++i) {
-    if (std::isnan(geometry.lat[i]) || std::isnan(geometry.lon[i])) unknown.push_back(geometry.site_names[i]);
-    else if (in_box(box, geometry.lat[i], geometry.lon[i])) kept.push_back(i);
+    if (std::isnan(geometry.lat[i]) || std::isnan(geometry.lon[i]))
+      unknown.push_back(geometry.site_names[i]);
+    else if (in_box(box, geometry.lat[i], geometry.lon[i]))
+      kept.push_back(i);
   }
   if (kept.empty())
-    throw Error(ErrorKind::input, fmt::format("none of the {} sites lies in the box", geometry.site_names.size()), "[input] box",
-                "the box is [west, south, east, north] in degrees; widen it or leave it out");
-  if (!unknown.empty()) notes.push_back("left out by the box, because their coordinates are unknown: " + some_names(unknown));
+    throw Error(ErrorKind::input, fmt::format("none of the {} sites lies in the box", geometry.site_names.size()),
+                "[input] box", "the box is [west, south, east, north] in degrees; widen it or leave it out");
+  if (!unknown.empty())
+    notes.push_back("left out by the box, because their coordinates are unknown: " + some_names(unknown));
   const auto keep = [&](auto& values) {
     if (values.empty()) return;
     for (std::size_t i = 0; i < kept.size(); ++i) values[i] = values[kept[i]];
@@ -252,7 +278,8 @@ struct ValueRules {
   [[nodiscard]] std::size_t ValueCounts::*set_aside(double value) const {
     if (std::isnan(value)) return &ValueCounts::fill;
     if (std::isinf(value)) return &ValueCounts::infinite;
-    if (std::find(missing_values.begin(), missing_values.end(), value) != missing_values.end()) return &ValueCounts::job_missing;
+    if (std::find(missing_values.begin(), missing_values.end(), value) != missing_values.end())
+      return &ValueCounts::job_missing;
     if (valid_range && !(value >= (*valid_range)[0] && value <= (*valid_range)[1])) return &ValueCounts::out_of_range;
     return nullptr;
   }
@@ -261,16 +288,16 @@ struct ValueRules {
 /// All values of the panel, site after site.
 struct Table {
   std::size_t steps = 0;
-  std::vector<double> values;        ///< site * steps + step, as read
-  std::vector<unsigned char> held;   ///< same layout: 1 if some file has a cell for it
+  std::vector<double> values;       ///< site * steps + step, as read
+  std::vector<unsigned char> held;  ///< same layout: 1 if some file has a cell for it
   ValueRules rules;
 };
 
 /// Lays the rows of all files on the table and applies the rule for duplicates.
 class TableBuilder {
  public:
-  TableBuilder(const std::vector<PanelFile>& files, const JoinedAxis& joined, const std::vector<std::string>& names, DuplicateRule rule,
-               Table& table)
+  TableBuilder(const std::vector<PanelFile>& files, const JoinedAxis& joined, const std::vector<std::string>& names,
+               DuplicateRule rule, Table& table)
       : files_(files), joined_(joined), rule_(rule), table_(table) {
     for (std::size_t i = 0; i < names.size(); ++i) index_.emplace(names[i], i);
     table.values.assign(names.size() * table.steps, kNaN);
@@ -324,17 +351,19 @@ class TableBuilder {
     for (std::size_t f = 0; f < files_.size(); ++f) {
       if (std::find(files_[f].sites.begin(), files_[f].sites.end(), site) == files_[f].sites.end()) continue;
       for (std::size_t row = 0; row < files_[f].lines.size(); ++row)
-        if (joined_.axis_step[f][row] == static_cast<std::int64_t>(step)) return fmt::format("{}:{}", files_[f].path, files_[f].lines[row]);
+        if (joined_.axis_step[f][row] == static_cast<std::int64_t>(step))
+          return fmt::format("{}:{}", files_[f].path, files_[f].lines[row]);
     }
     return {};
   }
 
-  [[noreturn]] void refuse(std::size_t f, std::size_t row, std::size_t column, std::size_t step, double earlier, double value) const {
+  [[noreturn]] void refuse(std::size_t f, std::size_t row, std::size_t column, std::size_t step, double earlier,
+                           double value) const {
     const std::string& site = files_[f].sites[column];
     const auto text = [](double v) { return std::isnan(v) ? std::string("missing") : number_text(v); };
     throw Error(ErrorKind::input,
-                fmt::format("{} of site '{}' is given twice with different values: {} and {}", joined_.axis.label(step), site,
-                            text(earlier), text(value)),
+                fmt::format("{} of site '{}' is given twice with different values: {} and {}", joined_.axis.label(step),
+                            site, text(earlier), text(value)),
                 fmt::format("files: {} and {}:{}", first_holder(site, step), files_[f].path, files_[f].lines[row]),
                 "remove one of the rows, or choose in the job: [input] duplicates = \"first\" or \"mean\"");
   }
@@ -396,9 +425,11 @@ class PanelSource final : public TileSource {
 
 void check_request(const InputRequest& request) {
   if (request.mask)
-    throw Error(ErrorKind::job, "[input] mask does not apply to a CSV panel", "", "leave out mask, or leave out columns of the panel");
+    throw Error(ErrorKind::job, "[input] mask does not apply to a CSV panel", "",
+                "leave out mask, or leave out columns of the panel");
   if (!request.select.empty())
-    throw Error(ErrorKind::job, "[input] select does not apply to a CSV panel: it has no further dimension", "", "leave out select");
+    throw Error(ErrorKind::job, "[input] select does not apply to a CSV panel: it has no further dimension", "",
+                "leave out select");
 }
 
 std::optional<TimeStep> given_step(const std::optional<InputRequest::TimeMend>& mend) {
@@ -413,8 +444,10 @@ std::string common_unit(const std::vector<PanelFile>& files) {
   for (const PanelFile& file : files) {
     if (file.unit.empty()) continue;
     if (stated != nullptr && stated->unit != file.unit)
-      throw Error(ErrorKind::input, fmt::format("the files state different units: '{}' and '{}'", stated->unit, file.unit),
-                  fmt::format("files: {} and {}", stated->path, file.path), "convert the values of one file, or correct its '# unit:' line");
+      throw Error(ErrorKind::input,
+                  fmt::format("the files state different units: '{}' and '{}'", stated->unit, file.unit),
+                  fmt::format("files: {} and {}", stated->path, file.path),
+                  "convert the values of one file, or correct its '# unit:' line");
     stated = &file;
   }
   return stated == nullptr ? "" : stated->unit;
@@ -439,7 +472,9 @@ std::string source_line(const PanelFile& file) {
 }
 
 std::string storage_words(const PanelFile& file) {
-  return fmt::format("CSV, separated by {}", file.separator == ',' ? "commas" : file.separator == ';' ? "semicolons" : "tabs");
+  return fmt::format("CSV, separated by {}", file.separator == ','   ? "commas"
+                                             : file.separator == ';' ? "semicolons"
+                                                                     : "tabs");
 }
 
 }  // namespace
@@ -449,7 +484,8 @@ bool is_csv_name(const std::string& path) {
   return name.ends_with(".csv") || name.ends_with(".txt") || name.ends_with(".tsv");
 }
 
-std::unique_ptr<TileSource> open_csv_panel(const InputRequest& request, const Log& /*log: what there is to say stands in Panel::notes*/) {
+std::unique_ptr<TileSource> open_csv_panel(const InputRequest& request,
+                                           const Log& /*log: what there is to say stands in Panel::notes*/) {
   check_request(request);
   Panel panel;
   panel.variable = request.variable.empty() ? "value" : request.variable;

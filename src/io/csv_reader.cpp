@@ -1,8 +1,8 @@
 #include "io/csv_reader.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <array>
-#include <fmt/format.h>
 #include <fstream>
 #include <iterator>
 
@@ -14,7 +14,9 @@ namespace {
 
 std::string read_file(const std::string& path) {
   std::ifstream file(path, std::ios::binary);
-  if (!file) throw Error(ErrorKind::input, "the file cannot be opened", "file: " + path, "check its name and that you may read it");
+  if (!file)
+    throw Error(ErrorKind::input, "the file cannot be opened", "file: " + path,
+                "check its name and that you may read it");
   std::string content{std::istreambuf_iterator<char>(file), {}};
   if (content.find('\0') != std::string::npos)
     throw Error(ErrorKind::input, "this is not a text file in UTF-8: it holds zero bytes", "file: " + path,
@@ -42,7 +44,8 @@ CsvReader::CsvReader(const std::string& path) : path_(path), content_(read_file(
   if (rest_.substr(0, kByteOrderMark.size()) == kByteOrderMark) rest_.remove_prefix(kByteOrderMark.size());
   std::string_view text;
   if (!next_line(text))
-    throw Error(ErrorKind::input, "the file holds no table: it has no header line", "file: " + path, "name a CSV file with a header");
+    throw Error(ErrorKind::input, "the file holds no table: it has no header line", "file: " + path,
+                "name a CSV file with a header");
   separator_ = find_separator(text);
   split_line(text);
   while (!cells_.empty() && trim(cells_.back()).empty()) cells_.pop_back();
@@ -71,8 +74,8 @@ std::string_view CsvReader::take_quoted(std::string_view& rest) {
   for (;;) {
     const std::size_t quote = rest.find('"');
     if (quote == std::string_view::npos)
-      throw Error(ErrorKind::input, "a quote is opened but not closed on its line", fmt::format("file: {}:{}", path_, line_),
-                  "close the quote; a cell must not span lines");
+      throw Error(ErrorKind::input, "a quote is opened but not closed on its line",
+                  fmt::format("file: {}:{}", path_, line_), "close the quote; a cell must not span lines");
     text += rest.substr(0, quote);
     rest.remove_prefix(quote + 1);
     if (rest.empty() || rest.front() != '"') break;
@@ -121,7 +124,8 @@ bool CsvReader::next() {
 }
 
 std::string CsvReader::where(std::size_t column) const {
-  return fmt::format("file: {}:{}, column: {}", path_, line_, column < header_.size() ? header_[column] : std::to_string(column + 1));
+  return fmt::format("file: {}:{}, column: {}", path_, line_,
+                     column < header_.size() ? header_[column] : std::to_string(column + 1));
 }
 
 }  // namespace lagscape

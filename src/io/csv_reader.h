@@ -6,9 +6,9 @@
 
 namespace lagscape {
 
-/// Reads one CSV file row by row: comma, semicolon or tab (the commonest in the header), fields quoted as in RFC 4180 but
-/// on one line, a UTF-8 byte order mark, any line ends, blank lines and comment lines ('#') passed over.
-/// Throws Error{input} naming file and line. Views it hands out are valid until the next call of next().
+/// Reads one CSV file row by row: comma, semicolon or tab (the commonest in the header), fields quoted as in RFC 4180
+/// but on one line, a UTF-8 byte order mark, any line ends, blank lines and comment lines ('#') passed over. Throws
+/// Error{input} naming file and line. Views it hands out are valid until the next call of next().
 class CsvReader {
  public:
   /// Reads the file and its header, the first line that is neither blank nor a comment.

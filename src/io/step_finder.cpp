@@ -53,7 +53,9 @@ Seconds roundest(double length, double tolerance) {
 }
 
 StepFit lay_on_fixed(std::span<const Seconds> times, Seconds step) {
-  const auto offset = [&](Seconds time, Seconds origin) { return time - origin - floor_div(time - origin + step / 2, step) * step; };
+  const auto offset = [&](Seconds time, Seconds origin) {
+    return time - origin - floor_div(time - origin + step / 2, step) * step;
+  };
   std::vector<Seconds> offsets;
   offsets.reserve(times.size());
   for (const Seconds time : times) offsets.push_back(offset(time, times.front()));
@@ -87,7 +89,8 @@ std::optional<StepFit> try_fixed(std::span<const Seconds> times, Seconds step, d
 }
 
 // Sharpens a rough step by the mean of the gaps of about one step, rounded as far as their scatter allows.
-std::optional<StepFit> sharpen_fixed(std::span<const Seconds> times, std::span<const Seconds> gaps, double rough, double share) {
+std::optional<StepFit> sharpen_fixed(std::span<const Seconds> times, std::span<const Seconds> gaps, double rough,
+                                     double share) {
   double sum = 0, largest = 0, singles = 0;
   for (const Seconds gap : gaps) {
     const double off = std::fabs(as_double(gap) - rough);
@@ -106,7 +109,8 @@ std::optional<StepFit> average_fixed(std::span<const Seconds> times, std::span<c
   double steps = 0;
   for (const Seconds gap : gaps) steps += std::round(as_double(gap) / rough);
   if (steps < 1) return std::nullopt;
-  return try_fixed(times, std::max<Seconds>(1, std::llround(as_double(times.back() - times.front()) / steps)), kSnapShare);
+  return try_fixed(times, std::max<Seconds>(1, std::llround(as_double(times.back() - times.front()) / steps)),
+                   kSnapShare);
 }
 
 std::optional<StepFit> find_fixed(std::span<const Seconds> times) {
@@ -123,8 +127,8 @@ std::optional<StepFit> find_fixed(std::span<const Seconds> times) {
   auto fit = sharpen_fixed(times, gaps, as_double(typical), kSnapShare);
   if (!fit) fit = average_fixed(times, gaps, as_double(typical));
   if (fit && fit->largest_shift <= kClear) return fit;
-  // More gaps than steps (the typical gap is several steps long), or no gap of one step at all (2, 3, 2 days): a finer step
-  // may hold, but must then explain the times well, since a fine enough one explains anything.
+  // More gaps than steps (the typical gap is several steps long), or no gap of one step at all (2, 3, 2 days): a finer
+  // step may hold, but must then explain the times well, since a fine enough one explains anything.
   for (const double rough : {as_double(sorted[sorted.size() / 4]), shortest, shortest / 2, shortest / 3, shortest / 4})
     if (auto finer = sharpen_fixed(times, gaps, rough, kFiner)) return finer;
   return fit;
@@ -136,7 +140,8 @@ std::optional<StepFit> find_fixed(std::span<const Seconds> times) {
 double month_position(Calendar calendar, Seconds time) {
   const Moment moment = moment_of(calendar, time);
   const double days = moment.date.day - 1 + as_double(moment.clock) / as_double(kDay);
-  return as_double(month_number(calendar, moment.date)) + days / days_in_month(calendar, moment.date.year, moment.date.month);
+  return as_double(month_number(calendar, moment.date)) +
+         days / days_in_month(calendar, moment.date.year, moment.date.month);
 }
 
 TimeStep calendar_step(std::int64_t months) {
@@ -151,19 +156,22 @@ bool last_of_month(Calendar calendar, Seconds time) {
 }
 
 // Nominal time of a month: that of the first stamp if it lies in it, else its start.
-void set_calendar_origin(Calendar calendar, std::span<const Seconds> times, std::int64_t month, bool straddles, StepFit& fit) {
+void set_calendar_origin(Calendar calendar, std::span<const Seconds> times, std::int64_t month, bool straddles,
+                         StepFit& fit) {
   const Moment first = moment_of(calendar, times.front());
   if (straddles || month_number(calendar, first.date) != month) {
     fit.origin = seconds_of(calendar, month_start(calendar, month));
     return;
   }
   fit.origin = times.front();
-  const bool ends = std::all_of(times.begin(), times.end(), [&](Seconds time) { return last_of_month(calendar, time); });
+  const bool ends =
+      std::all_of(times.begin(), times.end(), [&](Seconds time) { return last_of_month(calendar, time); });
   if (ends) fit.day_of_month = 31;
 }
 
 // Slots of `months` calendar months around the phase that the stamps share.
-std::optional<StepFit> try_months(Calendar calendar, std::span<const Seconds> times, std::span<const double> at, std::int64_t months) {
+std::optional<StepFit> try_months(Calendar calendar, std::span<const Seconds> times, std::span<const double> at,
+                                  std::int64_t months) {
   const double length = as_double(months);
   std::vector<double> offsets;
   offsets.reserve(at.size());
@@ -218,8 +226,8 @@ std::optional<StepFit> find_months(Calendar calendar, std::span<const Seconds> t
   return fit;
 }
 
-// True for equal fixed steps that calendar months explain less well: every 30 days over more than half a year, or with two
-// of them in one calendar month.
+// True for equal fixed steps that calendar months explain less well: every 30 days over more than half a year, or with
+// two of them in one calendar month.
 bool fixed_is_better(Calendar calendar, std::span<const Seconds> times, const StepFit& fixed, const StepFit& months) {
   constexpr double kExact = 1e-4;
   if (fixed.largest_shift > kExact) return false;

@@ -1,10 +1,10 @@
 #include "io/time_decode.h"
 
+#include <fmt/format.h>
 #include <algorithm>
 #include <array>
 #include <cctype>
 #include <cmath>
-#include <fmt/format.h>
 
 #include "lagscape/base/error.h"
 #include "lagscape/base/text.h"
@@ -48,7 +48,8 @@ std::optional<TimeUnit> find_unit(std::string_view word) {
   for (const UnitName& entry : kUnitNames)
     for (const char* name : entry.names) {
       if (name == nullptr) break;
-      if (word == name || (word.size() > 2 && word.substr(0, word.size() - 1) == name && word.back() == 's')) return entry.unit;
+      if (word == name || (word.size() > 2 && word.substr(0, word.size() - 1) == name && word.back() == 's'))
+        return entry.unit;
     }
   return std::nullopt;
 }
@@ -82,7 +83,8 @@ class ReferenceParser {
 
  private:
   [[noreturn]] void fail(const std::string& what) const {
-    throw Error(ErrorKind::input, fmt::format("time unit '{}': {}", whole_, what), where_, std::string(kMendWithCalendar));
+    throw Error(ErrorKind::input, fmt::format("time unit '{}': {}", whole_, what), where_,
+                std::string(kMendWithCalendar));
   }
 
   void skip_blanks() {
@@ -99,7 +101,8 @@ class ReferenceParser {
   std::string_view take_word() {
     skip_blanks();
     std::size_t size = 0;
-    while (size < rest_.size() && (std::isalpha(static_cast<unsigned char>(rest_[size])) != 0 || rest_[size] == '_')) ++size;
+    while (size < rest_.size() && (std::isalpha(static_cast<unsigned char>(rest_[size])) != 0 || rest_[size] == '_'))
+      ++size;
     const std::string_view word = rest_.substr(0, size);
     rest_.remove_prefix(size);
     return word;
@@ -140,11 +143,14 @@ class ReferenceParser {
   void parse_connector() {
     skip_blanks();
     if (rest_.empty())
-      throw Error(ErrorKind::input, fmt::format("time unit '{}' has no reference date, expected '{} since DATE'", whole_, whole_),
-                  where_, fmt::format("[input] time = {{ unit = \"{} since 1981-01-01\" }} with the date that zero stands for", whole_));
+      throw Error(ErrorKind::input,
+                  fmt::format("time unit '{}' has no reference date, expected '{} since DATE'", whole_, whole_), where_,
+                  fmt::format("[input] time = {{ unit = \"{} since 1981-01-01\" }} with the date that zero stands for",
+                              whole_));
     if (take('@')) return;
     const std::string_view word = take_word();
-    if (word != "since" && word != "after" && word != "from" && word != "ref") fail("expected 'since' and a date after the unit");
+    if (word != "since" && word != "after" && word != "from" && word != "ref")
+      fail("expected 'since' and a date after the unit");
   }
 
   Date parse_date() {
@@ -173,22 +179,27 @@ class ReferenceParser {
 
   int date_part(const char* name) {
     const std::string_view digits = take_digits();
-    if (digits.empty() || digits.size() > 2) fail(fmt::format("expected a {} of one or two digits, found '{}'", name, digits));
+    if (digits.empty() || digits.size() > 2)
+      fail(fmt::format("expected a {} of one or two digits, found '{}'", name, digits));
     return to_int(digits);
   }
 
   void check_date(const Date& date, std::size_t year_digits) {
     if (std::abs(date.year) > kMaxYear) fail(fmt::format("year {} is out of reach", date.year));
     if (date.year == 0 && !valid_date(calendar_, {0, 1, 1}))
-      throw Error(ErrorKind::input,
-                  fmt::format("time unit '{}': there is no year 0 in the {} calendar", whole_, calendar_name(calendar_)), where_,
-                  "if the file counts from year 0 of the proleptic Gregorian calendar say so in the job: [input] time = "
-                  "{ calendar = \"proleptic_gregorian\" }; else give the right date: time = { unit = \"days since 0001-01-01\" }");
+      throw Error(
+          ErrorKind::input,
+          fmt::format("time unit '{}': there is no year 0 in the {} calendar", whole_, calendar_name(calendar_)),
+          where_,
+          "if the file counts from year 0 of the proleptic Gregorian calendar say so in the job: [input] time = "
+          "{ calendar = \"proleptic_gregorian\" }; else give the right date: time = { unit = \"days since 0001-01-01\" "
+          "}");
     if (date.month < 1 || date.month > 12) fail(fmt::format("month {} does not exist, expected 1 to 12", date.month));
     if (!valid_date(calendar_, date))
-      fail(fmt::format("day {} of month {} does not exist in year {} of the {} calendar", date.day, date.month, date.year,
-                       calendar_name(calendar_)));
-    if (year_digits == 2) notes.push_back(fmt::format("time unit '{}': the year is taken as written, {} AD", whole_, date.year));
+      fail(fmt::format("day {} of month {} does not exist in year {} of the {} calendar", date.day, date.month,
+                       date.year, calendar_name(calendar_)));
+    if (year_digits == 2)
+      notes.push_back(fmt::format("time unit '{}': the year is taken as written, {} AD", whole_, date.year));
   }
 
   // "T06:30:00.0", " 6", "0630", "063000"; nothing is midnight.
@@ -276,14 +287,16 @@ Calendar read_calendar(const std::string& name, const std::string& where, std::v
   const std::string word = lower(trim(name));
   if (word.empty()) return Calendar::standard;
   if (word == "none") {
-    notes.push_back("calendar 'none': times are read as elapsed time in the standard calendar, their dates are mere labels");
+    notes.push_back(
+        "calendar 'none': times are read as elapsed time in the standard calendar, their dates are mere labels");
     return Calendar::standard;
   }
   if (word == "360") notes.push_back("calendar '360' is taken as '360_day'");
   if (const auto calendar = parse_calendar(word)) return *calendar;
-  const std::array<std::string, 8> known{"standard", "gregorian", "proleptic_gregorian", "julian",
-                                         "noleap",   "365_day",   "all_leap",            "360_day"};
-  throw Error(ErrorKind::input, fmt::format("calendar '{}' is not one of CF{}", trim(name), did_you_mean(word, known)), where,
+  const std::array<std::string, 8> known{"standard", "gregorian", "proleptic_gregorian", "julian", "noleap", "365_day",
+                                         "all_leap", "360_day"};
+  throw Error(ErrorKind::input, fmt::format("calendar '{}' is not one of CF{}", trim(name), did_you_mean(word, known)),
+              where,
               fmt::format("name the calendar in the job: [input] time = {{ calendar = \"standard\" }} (known: {})",
                           join(known, ", ")));
 }
@@ -301,29 +314,41 @@ class ValueDecoder {
     if (std::isnan(value)) fail(value, at, count, "is missing (NaN)");
     if (!in_reach(value)) fail(value, at, count, fmt::format("in '{}' lies beyond any date", units_));
     switch (unit_.kind) {
-      case UnitKind::seconds: return reference_ + scaled(value);
-      case UnitKind::fraction: return reference_ + divided(value);
-      case UnitKind::months: return calendar_months(value, 1, at, count);
-      case UnitKind::years: return calendar_months(value, 12, at, count);
-      case UnitKind::written_day: break;
+      case UnitKind::seconds:
+        return reference_ + scaled(value);
+      case UnitKind::fraction:
+        return reference_ + divided(value);
+      case UnitKind::months:
+        return calendar_months(value, 1, at, count);
+      case UnitKind::years:
+        return calendar_months(value, 12, at, count);
+      case UnitKind::written_day:
+        break;
     }
     return written_day(value, at, count);
   }
 
  private:
   [[noreturn]] void fail(double value, std::size_t at, std::size_t count, const std::string& what) const {
-    throw Error(ErrorKind::input, fmt::format("time value {} of {}: {} {}", at + 1, count, number_text(value), what), where_,
-                "correct or drop this step, or tell the right unit in the job: [input] time = { unit = \"days since 1981-01-01\" }");
+    throw Error(ErrorKind::input, fmt::format("time value {} of {}: {} {}", at + 1, count, number_text(value), what),
+                where_,
+                "correct or drop this step, or tell the right unit in the job: [input] time = { unit = \"days since "
+                "1981-01-01\" }");
   }
 
   bool in_reach(double value) const {
     const double years = kMaxYear;
     switch (unit_.kind) {
-      case UnitKind::seconds: return std::fabs(value) * static_cast<double>(unit_.size) < years * 360 * static_cast<double>(kDay);
-      case UnitKind::fraction: return std::fabs(value) / static_cast<double>(unit_.size) < years * 360 * static_cast<double>(kDay);
-      case UnitKind::months: return std::fabs(value) < years * 12;
-      case UnitKind::years: return std::fabs(value) < years;
-      case UnitKind::written_day: break;
+      case UnitKind::seconds:
+        return std::fabs(value) * static_cast<double>(unit_.size) < years * 360 * static_cast<double>(kDay);
+      case UnitKind::fraction:
+        return std::fabs(value) / static_cast<double>(unit_.size) < years * 360 * static_cast<double>(kDay);
+      case UnitKind::months:
+        return std::fabs(value) < years * 12;
+      case UnitKind::years:
+        return std::fabs(value) < years;
+      case UnitKind::written_day:
+        break;
     }
     return std::fabs(value) < (years + 1) * 10000;
   }
@@ -346,7 +371,9 @@ class ValueDecoder {
     const double doubled = std::round(value * 2);
     if (std::fabs(value * 2 - doubled) > kSlack * std::max(1.0, std::fabs(value)))
       fail(value, at, count,
-           fmt::format("in '{}' is neither a whole number nor a half: months and years differ in length, so it names no date", units_));
+           fmt::format(
+               "in '{}' is neither a whole number nor a half: months and years differ in length, so it names no date",
+               units_));
     const auto halves = static_cast<std::int64_t>(doubled);
     const Seconds from = add_months(calendar_, reference_, floor_div(halves, 2) * months);
     if (halves % 2 == 0) return from;
@@ -359,7 +386,8 @@ class ValueDecoder {
     const int year = static_cast<int>(digits / 10000);
     const Date date{value < 0 ? -year : year, static_cast<int>(digits / 100 % 100), static_cast<int>(digits % 100)};
     if (!valid_date(calendar_, date))
-      fail(value, at, count, fmt::format("read as '{}' is not a date of the {} calendar", units_, calendar_name(calendar_)));
+      fail(value, at, count,
+           fmt::format("read as '{}' is not a date of the {} calendar", units_, calendar_name(calendar_)));
     return seconds_of(calendar_, date, std::llround((std::fabs(value) - whole) * static_cast<double>(kDay)));
   }
 
@@ -372,8 +400,8 @@ class ValueDecoder {
 
 }  // namespace
 
-FileTimes decode_times(const std::string& file, const std::string& variable, std::span<const double> values, const TimeText& text,
-                       std::vector<std::string>& notes) {
+FileTimes decode_times(const std::string& file, const std::string& variable, std::span<const double> values,
+                       const TimeText& text, std::vector<std::string>& notes) {
   const std::string where = fmt::format("file: {}, variable: {}", file, variable);
   FileTimes out;
   out.file = file;

@@ -26,8 +26,9 @@ struct TimeText {
 
 /// Decodes CF time values with our own "UNIT since DATE" parser and calendars. `variable` is for messages. `notes`
 /// receives what was bent to be read ("24:00:00 taken as the next day"). Throws Error{input} naming file, value, units.
-[[nodiscard]] FileTimes decode_times(const std::string& file, const std::string& variable, std::span<const double> values,
-                                     const TimeText& text, std::vector<std::string>& notes);
+[[nodiscard]] FileTimes decode_times(const std::string& file, const std::string& variable,
+                                     std::span<const double> values, const TimeText& text,
+                                     std::vector<std::string>& notes);
 
 /// Two stored steps that fall on the same step of the axis: their values must be compared by the reader.
 struct Overlap {
@@ -37,15 +38,17 @@ struct Overlap {
 /// The full regular axis of an archive, and where each stored step goes.
 struct JoinedAxis {
   TimeAxis axis;
-  std::vector<std::vector<std::int64_t>> axis_step;  ///< per file and stored step: step of the axis, -1 if outside the period
-  std::vector<Overlap> overlaps;                     ///< every later holder of a step against the first one
+  std::vector<std::vector<std::int64_t>>
+      axis_step;                  ///< per file and stored step: step of the axis, -1 if outside the period
+  std::vector<Overlap> overlaps;  ///< every later holder of a step against the first one
   std::size_t steps_present = 0;
   std::vector<std::string> notes;
 };
 
-/// Finds the step (fixed seconds, calendar months and multiples, years) unless `step` gives it, and lays all times on one
-/// full axis, cut to `period` (ISO dates, inclusive) if given. Files may come in any order. Near-regular times (within
-/// 25 % of the step) are snapped and the largest shift noted; anything else throws Error{input} naming file, times, remedy.
+/// Finds the step (fixed seconds, calendar months and multiples, years) unless `step` gives it, and lays all times on
+/// one full axis, cut to `period` (ISO dates, inclusive) if given. Files may come in any order. Near-regular times
+/// (within 25 % of the step) are snapped and the largest shift noted; anything else throws Error{input} naming file,
+/// times, remedy.
 [[nodiscard]] JoinedAxis join_times(const std::vector<FileTimes>& files, const std::optional<TimeStep>& step,
                                     const std::optional<std::pair<std::string, std::string>>& period);
 

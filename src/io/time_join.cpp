@@ -1,7 +1,7 @@
 // join_times of time_decode.h: from the stamps of many files to one full axis.
+#include <fmt/format.h>
 #include <algorithm>
 #include <cmath>
-#include <fmt/format.h>
 
 #include "io/step_finder.h"
 #include "io/time_decode.h"
@@ -23,7 +23,9 @@ std::string span_text(double seconds) {
   return fmt::format("{} days", human_number(seconds / static_cast<double>(kDay)));
 }
 
-std::string counted(std::int64_t count, const char* noun) { return fmt::format("{} {}{}", count, noun, count == 1 ? "" : "s"); }
+std::string counted(std::int64_t count, const char* noun) {
+  return fmt::format("{} {}{}", count, noun, count == 1 ? "" : "s");
+}
 
 /// The stamps of all files as one sorted list, each distinct time once.
 class Stamps {
@@ -50,7 +52,8 @@ class Stamps {
     for (const FileTimes& file : files_) {
       const auto found = std::find(file.times.begin(), file.times.end(), time);
       if (found != file.times.end())
-        return fmt::format("{} (file {}, time step {})", iso_text(calendar(), time), file.file, found - file.times.begin() + 1);
+        return fmt::format("{} (file {}, time step {})", iso_text(calendar(), time), file.file,
+                           found - file.times.begin() + 1);
     }
     return iso_text(calendar(), time);
   }
@@ -74,13 +77,15 @@ void check_calendars(const std::vector<FileTimes>& files, std::vector<std::strin
   for (const FileTimes& file : files) {
     if (file.calendar == first.calendar) continue;
     if (!same_dates(file, first.calendar) || !same_dates(first, file.calendar))
-      throw Error(ErrorKind::input,
-                  fmt::format("the files use different calendars: {} has '{}', {} has '{}'", first.file,
-                              calendar_name(first.calendar), file.file, calendar_name(file.calendar)),
-                  fmt::format("files: {} and {}", first.file, file.file),
-                  fmt::format("if one is wrongly labelled set the calendar for all: [input] time = {{ calendar = \"{}\" }}; else "
-                              "analyse the files apart",
-                              calendar_name(first.calendar)));
+      throw Error(
+          ErrorKind::input,
+          fmt::format("the files use different calendars: {} has '{}', {} has '{}'", first.file,
+                      calendar_name(first.calendar), file.file, calendar_name(file.calendar)),
+          fmt::format("files: {} and {}", first.file, file.file),
+          fmt::format(
+              "if one is wrongly labelled set the calendar for all: [input] time = {{ calendar = \"{}\" }}; else "
+              "analyse the files apart",
+              calendar_name(first.calendar)));
     notes.push_back(fmt::format("{} has calendar '{}', {} '{}': the same dates after 1582", first.file,
                                 calendar_name(first.calendar), file.file, calendar_name(file.calendar)));
     return;
@@ -113,13 +118,14 @@ void note_order(const std::vector<FileTimes>& files, std::vector<std::string>& n
   const auto odd = std::find_if(gaps.begin(), gaps.end(), [&](Seconds gap) { return gap % common != 0; });
   const auto at = static_cast<std::size_t>(odd == gaps.end() ? 0 : odd - gaps.begin());
   const auto seconds = [](Seconds s) { return span_text(static_cast<double>(s)); };
-  throw Error(ErrorKind::input,
-              fmt::format("times are not equally spaced: the commonest step is {} ({} of {}), but one of {} follows {}",
-                          seconds(common), most, gaps.size(), seconds(gaps[at]), iso_text(stamps.calendar(), times[at])),
-              fmt::format("between {} and {}", stamps.place(times[at]), stamps.place(times[at + 1])),
-              fmt::format("average the values to equal steps first; or, if the stamps are only inexact (by less than a quarter "
-                          "of a step), name the step: [input] time = {{ step = \"{}\" }}",
-                          duration_text({StepKind::seconds, common})));
+  throw Error(
+      ErrorKind::input,
+      fmt::format("times are not equally spaced: the commonest step is {} ({} of {}), but one of {} follows {}",
+                  seconds(common), most, gaps.size(), seconds(gaps[at]), iso_text(stamps.calendar(), times[at])),
+      fmt::format("between {} and {}", stamps.place(times[at]), stamps.place(times[at + 1])),
+      fmt::format("average the values to equal steps first; or, if the stamps are only inexact (by less than a quarter "
+                  "of a step), name the step: [input] time = {{ step = \"{}\" }}",
+                  duration_text({StepKind::seconds, common})));
 }
 
 [[noreturn]] void refuse_step(const Stamps& stamps, TimeStep step) {
@@ -134,12 +140,14 @@ void note_order(const std::vector<FileTimes>& files, std::vector<std::string>& n
       worst_off = off;
     }
   }
-  throw Error(ErrorKind::input,
-              fmt::format("times do not fit the step {} of the job: {} is {} away from the nearest step counted from {}, at most "
-                          "a quarter of a step is allowed",
-                          duration_text(step), iso_text(stamps.calendar(), worst),
-                          span_text(std::fabs(static_cast<double>(worst_off))), iso_text(stamps.calendar(), times.front())),
-              stamps.place(worst), "correct [input] time = { step = ... }, or leave it out to let the step be found");
+  throw Error(
+      ErrorKind::input,
+      fmt::format(
+          "times do not fit the step {} of the job: {} is {} away from the nearest step counted from {}, at most "
+          "a quarter of a step is allowed",
+          duration_text(step), iso_text(stamps.calendar(), worst), span_text(std::fabs(static_cast<double>(worst_off))),
+          iso_text(stamps.calendar(), times.front())),
+      stamps.place(worst), "correct [input] time = { step = ... }, or leave it out to let the step be found");
 }
 
 StepFit fit_times(const Stamps& stamps, const std::optional<TimeStep>& step) {
@@ -150,9 +158,11 @@ StepFit fit_times(const Stamps& stamps, const std::optional<TimeStep>& step) {
     return std::move(*fit);
   }
   if (times.size() == 1)
-    throw Error(ErrorKind::input, fmt::format("there is a single time step, {}, so the length of a step is unknown",
-                                              iso_text(stamps.calendar(), times.front())),
-                stamps.place(times.front()), "name more files, or give the step in the job: [input] time = { step = \"P1M\" }");
+    throw Error(ErrorKind::input,
+                fmt::format("there is a single time step, {}, so the length of a step is unknown",
+                            iso_text(stamps.calendar(), times.front())),
+                stamps.place(times.front()),
+                "name more files, or give the step in the job: [input] time = { step = \"P1M\" }");
   auto fit = find_step(stamps.calendar(), times);
   if (!fit) refuse_uneven(stamps);
   return std::move(*fit);
@@ -178,13 +188,15 @@ void check_size(const Stamps& stamps, const StepFit& fit) {
   const Seconds before = stamps.times()[hole.before], after = stamps.times()[hole.before + 1];
   // The lonelier side of the hole is the likely slip.
   const bool early = hole.before + 1 <= fit.slots.size() / 2;
-  throw Error(ErrorKind::input,
-              fmt::format("the time axis would have {} steps ({}) of which the files hold {}; the time value {} is likely wrong",
-                          grouped(static_cast<std::size_t>(size)), step_words(fit.step), present,
-                          iso_text(stamps.calendar(), early ? before : after)),
-              fmt::format("nothing between {} and {}", stamps.place(before), stamps.place(after)),
-              "correct or leave out the file with the wrong time, or cut it off before joining; if the times are right, give a "
-              "longer step: [input] time = { step = \"P1M\" }");
+  throw Error(
+      ErrorKind::input,
+      fmt::format(
+          "the time axis would have {} steps ({}) of which the files hold {}; the time value {} is likely wrong",
+          grouped(static_cast<std::size_t>(size)), step_words(fit.step), present,
+          iso_text(stamps.calendar(), early ? before : after)),
+      fmt::format("nothing between {} and {}", stamps.place(before), stamps.place(after)),
+      "correct or leave out the file with the wrong time, or cut it off before joining; if the times are right, give a "
+      "longer step: [input] time = { step = \"P1M\" }");
 }
 
 void note_shift(const Stamps& stamps, const StepFit& fit, std::vector<std::string>& notes) {
@@ -197,8 +209,8 @@ void note_shift(const Stamps& stamps, const StepFit& fit, std::vector<std::strin
                               span_text(fit.largest_shift * per_step)));
 }
 
-// A bound of the period; a day that the calendar lacks (31 December of 360_day, 29 February of noleap) means the nearest
-// day inside the period.
+// A bound of the period; a day that the calendar lacks (31 December of 360_day, 29 February of noleap) means the
+// nearest day inside the period.
 Seconds period_bound(Calendar calendar, const std::string& text, bool end) {
   if (const auto time = parse_iso(calendar, text, end)) return *time;
   const auto elsewhere = parse_iso(Calendar::all_leap, text);
@@ -208,7 +220,8 @@ Seconds period_bound(Calendar calendar, const std::string& text, bool end) {
   Date date = moment_of(Calendar::all_leap, *elsewhere).date;
   while (!valid_date(calendar, date) && date.day > 1) --date.day;
   if (!valid_date(calendar, date))
-    throw Error(ErrorKind::job, fmt::format("'{}' in [input] period does not exist in the {} calendar", text, calendar_name(calendar)),
+    throw Error(ErrorKind::job,
+                fmt::format("'{}' in [input] period does not exist in the {} calendar", text, calendar_name(calendar)),
                 "", "choose another date");
   return seconds_of(calendar, date) + kDay - (end ? 1 : 0);
 }
@@ -222,31 +235,37 @@ Cut cut_to_period(const TimeAxis& whole, const Period& period, std::vector<std::
   const Calendar calendar = whole.calendar();
   const Seconds from = period_bound(calendar, period.first, false), to = period_bound(calendar, period.second, true);
   if (from > to)
-    throw Error(ErrorKind::job, fmt::format("[input] period begins after it ends: {} to {}", period.first, period.second), "",
+    throw Error(ErrorKind::job,
+                fmt::format("[input] period begins after it ends: {} to {}", period.first, period.second), "",
                 "write the earlier date first");
   const auto last = whole.size() - 1;
   const auto first_from = [&](Seconds bound) {
     std::size_t a = 0, b = whole.size();
     while (a < b) {
       const std::size_t middle = a + (b - a) / 2;
-      if (whole.time(middle) < bound) a = middle + 1;
-      else b = middle;
+      if (whole.time(middle) < bound)
+        a = middle + 1;
+      else
+        b = middle;
     }
     return a;
   };
   const std::size_t low = first_from(from), high = first_from(to + 1);
   if (low >= high)
-    throw Error(ErrorKind::input, fmt::format("no time step lies in the period {} to {}: the files cover {} to {}", period.first,
-                                              period.second, whole.label(0), whole.label(last)),
+    throw Error(ErrorKind::input,
+                fmt::format("no time step lies in the period {} to {}: the files cover {} to {}", period.first,
+                            period.second, whole.label(0), whole.label(last)),
                 "[input] period", "choose a period that the files cover, or leave it out");
   const bool begins_early = whole.index_of(from) < 0, ends_late = whole.slice(last, 2).time(1) <= to;
   if (begins_early || ends_late)
-    notes.push_back(fmt::format("the period {} to {} reaches beyond the files, which cover {} to {}: the axis is cut to what they cover",
-                                period.first, period.second, whole.label(0), whole.label(last)));
+    notes.push_back(fmt::format(
+        "the period {} to {} reaches beyond the files, which cover {} to {}: the axis is cut to what they cover",
+        period.first, period.second, whole.label(0), whole.label(last)));
   return {static_cast<std::int64_t>(low), static_cast<std::int64_t>(high - low)};
 }
 
-void place_steps(const std::vector<FileTimes>& files, const Stamps& stamps, const StepFit& fit, const Cut& cut, JoinedAxis& out) {
+void place_steps(const std::vector<FileTimes>& files, const Stamps& stamps, const StepFit& fit, const Cut& cut,
+                 JoinedAxis& out) {
   struct Holder {
     std::size_t file = 0, step = 0;
     bool taken = false;
@@ -277,16 +296,19 @@ void note_holes(const StepFit& fit, const TimeAxis& whole, std::vector<std::stri
   const Hole hole = largest_hole(fit);
   if (hole.steps == 0) return;
   std::int64_t missing = 0;
-  for (std::size_t i = 1; i < fit.slots.size(); ++i) missing += std::max<std::int64_t>(0, fit.slots[i] - fit.slots[i - 1] - 1);
+  for (std::size_t i = 1; i < fit.slots.size(); ++i)
+    missing += std::max<std::int64_t>(0, fit.slots[i] - fit.slots[i - 1] - 1);
   const auto first = static_cast<std::size_t>(fit.slots[hole.before] + 1);
   const std::size_t last = first + static_cast<std::size_t>(hole.steps) - 1;
   notes.push_back(fmt::format("{} of {} are in no file and count as missing; the longest run of them is {} ({} to {})",
-                              counted(missing, "step"), whole.size(), hole.steps, whole.label(first), whole.label(last)));
+                              counted(missing, "step"), whole.size(), hole.steps, whole.label(first),
+                              whole.label(last)));
 }
 
 }  // namespace
 
-JoinedAxis join_times(const std::vector<FileTimes>& files, const std::optional<TimeStep>& step, const std::optional<Period>& period) {
+JoinedAxis join_times(const std::vector<FileTimes>& files, const std::optional<TimeStep>& step,
+                      const std::optional<Period>& period) {
   if (files.empty()) throw Error(ErrorKind::internal, "no files to join");
   JoinedAxis out;
   check_calendars(files, out.notes);
@@ -295,16 +317,18 @@ JoinedAxis join_times(const std::vector<FileTimes>& files, const std::optional<T
   const StepFit fit = fit_times(stamps, step);
   check_size(stamps, fit);
   note_shift(stamps, fit, out.notes);
-  const TimeAxis whole(stamps.calendar(), fit.step, fit.origin, static_cast<std::size_t>(fit.slots.back() + 1), fit.day_of_month);
+  const TimeAxis whole(stamps.calendar(), fit.step, fit.origin, static_cast<std::size_t>(fit.slots.back() + 1),
+                       fit.day_of_month);
   note_holes(fit, whole, out.notes);
   Cut cut{0, static_cast<std::int64_t>(whole.size())};
   if (period) cut = cut_to_period(whole, *period, out.notes);
   out.axis = whole.slice(static_cast<std::size_t>(cut.first), static_cast<std::size_t>(cut.count));
   place_steps(files, stamps, fit, cut, out);
   if (out.steps_present == 0)
-    throw Error(ErrorKind::input, fmt::format("the files hold no time step from {} to {}, only before and after", period->first,
-                                              period->second),
-                "[input] period", "choose a period that the files cover, or leave it out");
+    throw Error(
+        ErrorKind::input,
+        fmt::format("the files hold no time step from {} to {}, only before and after", period->first, period->second),
+        "[input] period", "choose a period that the files cover, or leave it out");
   return out;
 }
 

@@ -67,6 +67,7 @@ const TrendTest* find_trend_test(std::string_view name) {
 
 std::vector<std::string> trend_test_names() {
   std::vector<std::string> names;
+  names.reserve(kTests.size());
   for (const TrendTest& test : kTests) names.emplace_back(test.name);
   return names;
 }

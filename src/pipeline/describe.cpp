@@ -20,14 +20,13 @@ namespace {
 std::string unit_of(UnitRule rule, const JobPlan& plan) {
   const std::string& input = plan.panel.units;
   const TimeAxis& axis = plan.panel.axis;
-  const std::string plain = dimensionless(input) ? "1" : input;
   switch (rule) {
     case UnitRule::one:
       return "1";
     case UnitRule::none:
       return "";
     case UnitRule::input:
-      return plain;
+      return dimensionless(input) ? "1" : input;
     case UnitRule::input_difference:
       return difference_unit(input);
     case UnitRule::input_squared:

@@ -35,10 +35,10 @@ Spread spread_of(std::vector<float> values) {
     const double place = share * static_cast<double>(values.size() - 1);
     const auto below = static_cast<std::size_t>(place);
     std::ranges::nth_element(values, values.begin() + static_cast<std::ptrdiff_t>(below));
-    const double low = values[below];
+    const auto low = static_cast<double>(values[below]);
     if (below + 1 == values.size()) return low;
-    const double high =
-        *std::ranges::min_element(values.begin() + static_cast<std::ptrdiff_t>(below) + 1, values.end());
+    const auto high = static_cast<double>(
+        *std::ranges::min_element(values.begin() + static_cast<std::ptrdiff_t>(below) + 1, values.end()));
     return low + (high - low) * (place - static_cast<double>(below));
   };
   spread.low = quantile(0.05);

@@ -41,7 +41,8 @@ Design::Design(const DesignColumns& in) : group_(in.group), groups_(in.groups), 
     std::vector<double> means(groups_, 0.0);
     for (std::size_t t = 0; t < n; ++t) means[group_[t]] += column[t];
     for (std::size_t t = 0; t < n; ++t) column[t] -= means[group_[t]] / group_steps[group_[t]];
-    const double length = std::sqrt(dot(column.data(), column.data(), n));
+    // A sine at the Nyquist frequency is nothing but rounding: columns are of order one or larger.
+    const double length = std::sqrt(std::max(dot(column.data(), column.data(), n), static_cast<double>(n)));
     const bool trend = source >= in.season.size();
     const std::size_t trend_index = trend ? source - in.season.size() : 0;
     for (int pass = 0; pass < 2; ++pass) {  // twice is enough: columns are then orthogonal to rounding

@@ -1,13 +1,14 @@
 #include "lagscape/grid/calendar.h"
 
-#include <array>
 #include <gtest/gtest.h>
+#include <array>
 
 namespace lagscape {
 namespace {
 
-constexpr std::array kAll{Calendar::standard, Calendar::proleptic_gregorian, Calendar::julian,
-                          Calendar::noleap,   Calendar::all_leap,            Calendar::day360};
+constexpr std::array kAll{Calendar::standard, Calendar::proleptic_gregorian,
+                          Calendar::julian,   Calendar::noleap,
+                          Calendar::all_leap, Calendar::day360};
 
 // Days since 1970-01-01 in the calendars in the order of kAll; kNone where the calendar has no such day.
 // Printed by Debian's python3-cftime 1.6.2:
@@ -60,7 +61,8 @@ TEST(Calendar, DayNumbersAgreeWithCftime) {
 TEST(Calendar, DaysFrom1850To2015AreThoseOfEachCalendar) {
   constexpr std::array<std::int64_t, 6> expected{60265, 60265, 60266, 60225, 60390, 59400};  // cftime 1.6.2, as above
   for (std::size_t c = 0; c < kAll.size(); ++c)
-    EXPECT_EQ(day_number(kAll[c], {2015, 1, 1}) - day_number(kAll[c], {1850, 1, 1}), expected[c]) << calendar_name(kAll[c]);
+    EXPECT_EQ(day_number(kAll[c], {2015, 1, 1}) - day_number(kAll[c], {1850, 1, 1}), expected[c])
+        << calendar_name(kAll[c]);
 }
 
 TEST(Calendar, StandardAndProlepticDifferByTwoDaysFromYearOne) {
@@ -89,7 +91,8 @@ void walk_every_day(Calendar calendar, int first_year, int last_year) {
       for (int d = 1; d <= days_in_month(calendar, year, month); ++d) {
         const Date date{year, month, d};
         if (!valid_date(calendar, date)) continue;
-        ASSERT_EQ(day_number(calendar, date), day) << calendar_name(calendar) << ' ' << year << '-' << month << '-' << d;
+        ASSERT_EQ(day_number(calendar, date), day)
+            << calendar_name(calendar) << ' ' << year << '-' << month << '-' << d;
         ASSERT_EQ(date_of(calendar, day), date) << calendar_name(calendar) << " day " << day;
         ++day;
       }
@@ -145,11 +148,14 @@ TEST(Iso, TextNamesTheTimeOnlyWhenItIsNotMidnight) {
   EXPECT_EQ(iso_text(Calendar::standard, seconds_of(Calendar::standard, {1981, 1, 15}, 43200)), "1981-01-15T12:00:00");
   EXPECT_EQ(iso_text(Calendar::standard, -1), "1969-12-31T23:59:59");
   EXPECT_EQ(iso_text(Calendar::day360, -1), "1969-12-30T23:59:59");
-  EXPECT_EQ(iso_text(Calendar::proleptic_gregorian, seconds_of(Calendar::proleptic_gregorian, {-12, 3, 1})), "-0012-03-01");
+  EXPECT_EQ(iso_text(Calendar::proleptic_gregorian, seconds_of(Calendar::proleptic_gregorian, {-12, 3, 1})),
+            "-0012-03-01");
 }
 
 TEST(Iso, DatesAndDateTimesAreRead) {
-  const auto at = [](int y, int m, int d, Seconds clock = 0) { return seconds_of(Calendar::standard, {y, m, d}, clock); };
+  const auto at = [](int y, int m, int d, Seconds clock = 0) {
+    return seconds_of(Calendar::standard, {y, m, d}, clock);
+  };
   const auto read = [](const char* text) { return parse_iso(Calendar::standard, text); };
   EXPECT_EQ(read("1981"), at(1981, 1, 1));
   EXPECT_EQ(read("1981-03"), at(1981, 3, 1));
@@ -162,7 +168,9 @@ TEST(Iso, DatesAndDateTimesAreRead) {
 }
 
 TEST(Iso, TheEndOfANamedPeriodIsItsLastSecond) {
-  const auto end = [](Calendar calendar, const char* text) { return iso_text(calendar, *parse_iso(calendar, text, true)); };
+  const auto end = [](Calendar calendar, const char* text) {
+    return iso_text(calendar, *parse_iso(calendar, text, true));
+  };
   EXPECT_EQ(end(Calendar::standard, "1980"), "1980-12-31T23:59:59");
   EXPECT_EQ(end(Calendar::standard, "1980-02"), "1980-02-29T23:59:59");
   EXPECT_EQ(end(Calendar::noleap, "1980-02"), "1980-02-28T23:59:59");
@@ -172,9 +180,9 @@ TEST(Iso, TheEndOfANamedPeriodIsItsLastSecond) {
 }
 
 TEST(Iso, MalformedTextAndImpossibleDatesGiveNothing) {
-  for (const char* text : {"", "81", "1981-", "1981-13", "1981-02-30", "1981-1-1x", "1981/01/01", "01.02.1981", "1981-01-01T25",
-                           "1981-01-01T06:60", "1981-01T06:00", "1981-01-01T", "1981-01-01T06:00+01", "1981-01-01T06:00:00.",
-                           "1234567", "today", "1582-10-10"})
+  for (const char* text : {"", "81", "1981-", "1981-13", "1981-02-30", "1981-1-1x", "1981/01/01", "01.02.1981",
+                           "1981-01-01T25", "1981-01-01T06:60", "1981-01T06:00", "1981-01-01T", "1981-01-01T06:00+01",
+                           "1981-01-01T06:00:00.", "1234567", "today", "1582-10-10"})
     EXPECT_EQ(parse_iso(Calendar::standard, text), std::nullopt) << text;
 }
 

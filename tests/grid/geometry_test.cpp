@@ -1,7 +1,7 @@
 #include "lagscape/grid/geometry.h"
 
-#include <cmath>
 #include <gtest/gtest.h>
+#include <cmath>
 
 namespace lagscape {
 namespace {

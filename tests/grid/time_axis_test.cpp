@@ -1,7 +1,7 @@
 #include "lagscape/grid/time_axis.h"
 
-#include <array>
 #include <gtest/gtest.h>
+#include <array>
 
 namespace lagscape {
 namespace {
@@ -9,7 +9,9 @@ namespace {
 constexpr TimeStep kMonthly{StepKind::months, 1};
 constexpr TimeStep kDaily{StepKind::seconds, kDay};
 
-Seconds at(Calendar calendar, int year, int month, int day, Seconds clock = 0) { return seconds_of(calendar, {year, month, day}, clock); }
+Seconds at(Calendar calendar, int year, int month, int day, Seconds clock = 0) {
+  return seconds_of(calendar, {year, month, day}, clock);
+}
 
 TEST(Duration, WholeUnitsAreRead) {
   EXPECT_EQ(parse_duration("P1M"), kMonthly);
@@ -23,14 +25,15 @@ TEST(Duration, WholeUnitsAreRead) {
 }
 
 TEST(Duration, MalformedMixedOrEmptyDurationsGiveNothing) {
-  for (const char* text : {"", "P", "PT", "1M", "P0D", "P-1D", "P1.5D", "P1", "P1H", "PT1D", "P1Y6M", "P1MT1H", "P1DT", "month",
-                           "P99999999999D"})
+  for (const char* text : {"", "P", "PT", "1M", "P0D", "P-1D", "P1.5D", "P1", "P1H", "PT1D", "P1Y6M", "P1MT1H", "P1DT",
+                           "month", "P99999999999D"})
     EXPECT_EQ(parse_duration(text), std::nullopt) << text;
 }
 
 TEST(Duration, TextReadsBackAsTheSameStep) {
-  for (const TimeStep step : {kMonthly, TimeStep{StepKind::months, 12}, TimeStep{StepKind::years, 5}, kDaily,
-                              TimeStep{StepKind::seconds, 21600}, TimeStep{StepKind::seconds, 90}, TimeStep{StepKind::seconds, 7}})
+  for (const TimeStep step :
+       {kMonthly, TimeStep{StepKind::months, 12}, TimeStep{StepKind::years, 5}, kDaily,
+        TimeStep{StepKind::seconds, 21600}, TimeStep{StepKind::seconds, 90}, TimeStep{StepKind::seconds, 7}})
     EXPECT_EQ(parse_duration(duration_text(step)), step) << duration_text(step);
   EXPECT_EQ(duration_text({StepKind::seconds, 10 * kDay}), "P10D");
   EXPECT_EQ(duration_text({StepKind::seconds, 21600}), "PT6H");
@@ -77,9 +80,11 @@ TEST(TimeAxis, DaysThatTheStandardCalendarLeftOutAreClampedToo) {
 }
 
 TEST(TimeAxis, EveryNominalTimeFallsOnItsOwnStep) {
-  for (const Calendar calendar : {Calendar::standard, Calendar::julian, Calendar::noleap, Calendar::all_leap, Calendar::day360})
-    for (const TimeStep step : {kMonthly, TimeStep{StepKind::months, 3}, TimeStep{StepKind::years, 1}, TimeStep{StepKind::years, 10},
-                                kDaily, TimeStep{StepKind::seconds, 3600}, TimeStep{StepKind::seconds, 7 * kDay + 1}}) {
+  for (const Calendar calendar :
+       {Calendar::standard, Calendar::julian, Calendar::noleap, Calendar::all_leap, Calendar::day360})
+    for (const TimeStep step :
+         {kMonthly, TimeStep{StepKind::months, 3}, TimeStep{StepKind::years, 1}, TimeStep{StepKind::years, 10}, kDaily,
+          TimeStep{StepKind::seconds, 3600}, TimeStep{StepKind::seconds, 7 * kDay + 1}}) {
       const TimeAxis axis(calendar, step, at(calendar, 1570, 1, 16, 43200), 600);
       for (std::size_t t = 0; t < axis.size(); ++t) {
         Seconds off = 1;
@@ -121,7 +126,8 @@ TEST(TimeAxis, SeasonsFollowTheStep) {
   EXPECT_EQ(TimeAxis(Calendar::standard, kDaily, first, 40).season_of(20), 4);
 }
 
-// By hand from methods section 1.1: (day of year - 1 + day fraction) / length of the year. Days of the year from cftime 1.6.2:
+// By hand from methods section 1.1: (day of year - 1 + day fraction) / length of the year. Days of the year from
+// cftime 1.6.2:
 //   /usr/bin/python3 -c "from cftime import datetime; print(datetime(2000, 2, 29, 18, calendar='standard').dayofyr)"
 TEST(TimeAxis, YearPhaseUsesTheLengthOfThatYear) {
   const auto phase = [](Calendar calendar, Date date, Seconds clock) {

@@ -1,13 +1,13 @@
 #include "io/csv_panel.h"
 
+#include <gtest/gtest.h>
+#include <unistd.h>
 #include <atomic>
 #include <cmath>
 #include <filesystem>
 #include <fstream>
-#include <gtest/gtest.h>
 #include <numeric>
 #include <random>
-#include <unistd.h>
 
 #include "lagscape/base/error.h"
 #include "lagscape/base/text.h"
@@ -37,7 +37,9 @@ class CsvPanel : public testing::Test {
   }
 
   // Adds a panel file to the request.
-  void panel(const std::string& content, const std::string& name = "gauges.csv") { request_.files.push_back(write(name, content)); }
+  void panel(const std::string& content, const std::string& name = "gauges.csv") {
+    request_.files.push_back(write(name, content));
+  }
 
   [[nodiscard]] std::unique_ptr<TileSource> open() const { return open_csv_panel(request_, Log{}); }
 
@@ -67,8 +69,10 @@ class CsvPanel : public testing::Test {
 void expect_series(const std::vector<double>& found, const std::vector<double>& expected) {
   ASSERT_EQ(found.size(), expected.size());
   for (std::size_t i = 0; i < found.size(); ++i) {
-    if (std::isnan(expected[i])) EXPECT_TRUE(std::isnan(found[i])) << "step " << i << ": " << found[i];
-    else EXPECT_DOUBLE_EQ(found[i], expected[i]) << "step " << i;
+    if (std::isnan(expected[i]))
+      EXPECT_TRUE(std::isnan(found[i])) << "step " << i << ": " << found[i];
+    else
+      EXPECT_DOUBLE_EQ(found[i], expected[i]) << "step " << i;
   }
 }
 
@@ -128,9 +132,12 @@ TEST_F(CsvPanel, GatherLaysCellsAcrossLanesAndPadsTheLastGroup) {
   for (std::size_t cell = 0; cell < 8; ++cell)
     for (std::size_t t = 0; t < kPitch; ++t) {
       const double found = out[(cell / kLanes * kPitch + t) * kLanes + cell % kLanes];
-      if (t >= 3) EXPECT_EQ(found, -7);
-      else if (cell >= 5) EXPECT_TRUE(std::isnan(found));
-      else EXPECT_EQ(found, 100.0 * static_cast<double>(cell + 2) + static_cast<double>(t));
+      if (t >= 3)
+        EXPECT_EQ(found, -7);
+      else if (cell >= 5)
+        EXPECT_TRUE(std::isnan(found));
+      else
+        EXPECT_EQ(found, 100.0 * static_cast<double>(cell + 2) + static_cast<double>(t));
     }
   EXPECT_EQ(counts.fill, 0U);
 }
@@ -140,9 +147,11 @@ TEST_F(CsvPanel, SeparatorsQuotesCommentsAndLineEndsOfEveryKindAreRead) {
       "date,\"Weir, upper\",b\n2001-01-01,1,2\n2001-01-02,3,4\n",
       "date;Weir, upper;b\n2001-01-01;1;2\n2001-01-02;3;4\n",
       "date\tWeir, upper\tb\n2001-01-01\t1\t2\n2001-01-02\t3\t4",
-      ("\xEF\xBB\xBF" "date,\"Weir, upper\",b\r\n2001-01-01,1,2\r\n2001-01-02,3,4\r\n"),
+      ("\xEF\xBB\xBF"
+       "date,\"Weir, upper\",b\r\n2001-01-01,1,2\r\n2001-01-02,3,4\r\n"),
       "date,\"Weir, upper\",b\r2001-01-01,1,2\r2001-01-02,3,4\r",
-      "# a comment\n\n  # and another\ndate , \"Weir, upper\" , b\n\n\"2001-01-01\", \"1\" ,2\n#2001-01-05,7,7\n 2001-01-02 ,3,4\n\n",
+      "# a comment\n\n  # and another\ndate , \"Weir, upper\" , b\n\n\"2001-01-01\", \"1\" ,2\n#2001-01-05,7,7\n "
+      "2001-01-02 ,3,4\n\n",
       "date,\"Weir, upper\",b,\n2001-01-01,1,2,\n2001-01-02,3,4,,\n",
   };
   int number = 0;
@@ -162,12 +171,12 @@ TEST_F(CsvPanel, DoubledQuotesStandForOne) {
 }
 
 TEST_F(CsvPanel, DatesMayBeYearsMonthsDaysOrTimes) {
-  const std::pair<const char*, const char*> cases[] = {{"1999,1\n2000,2\n2001,3\n", "yearly"},
-                                                       {"1999-11,1\n1999-12,2\n2000-01,3\n", "monthly"},
-                                                       {"1999-12-31T22:00,1\n1999-12-31T23:00,2\n2000-01-01T00:00,3\n", "hourly"},
-                                                       {"19991230,1\n19991231,2\n20000101,3\n", "daily"},
-                                                       {"1999-12-31 12:00:00Z,1\n1999-12-31 18:00:00Z,2\n2000-01-01 00:00:00Z,3\n",
-                                                        "every 6 hours"}};
+  const std::pair<const char*, const char*> cases[] = {
+      {"1999,1\n2000,2\n2001,3\n", "yearly"},
+      {"1999-11,1\n1999-12,2\n2000-01,3\n", "monthly"},
+      {"1999-12-31T22:00,1\n1999-12-31T23:00,2\n2000-01-01T00:00,3\n", "hourly"},
+      {"19991230,1\n19991231,2\n20000101,3\n", "daily"},
+      {"1999-12-31 12:00:00Z,1\n1999-12-31 18:00:00Z,2\n2000-01-01 00:00:00Z,3\n", "every 6 hours"}};
   int number = 0;
   for (const auto& [rows, words] : cases) {
     request_.files.clear();
@@ -243,14 +252,16 @@ TEST_F(CsvPanel, ThePeriodCutsTheRecord) {
 
 TEST_F(CsvPanel, CoordinatesAreLaidBesideTheNames) {
   panel("date,Alder Weir,Brook,Cove\n2001-01-01,1,2,3\n2001-01-02,1,2,3\n");
-  request_.sites = write("sites.csv", "Station;Longitude;Latitude;Elevation\nBrook;1.5;52.25;80\n Alder Weir ;-2;51;\nCoves;0;50;1\n");
+  request_.sites = write(
+      "sites.csv", "Station;Longitude;Latitude;Elevation\nBrook;1.5;52.25;80\n Alder Weir ;-2;51;\nCoves;0;50;1\n");
   const auto source = open();
   const Geometry& geometry = source->panel().geometry;
   expect_series(geometry.lon, {-2, 1.5, kNaN});
   expect_series(geometry.lat, {51, 52.25, kNaN});
   expect_series(geometry.altitude, {kNaN, 80, kNaN});
   ASSERT_EQ(source->panel().notes.size(), 2U);
-  EXPECT_HAS(source->panel().notes[0], "without coordinates, because sites.csv does not list them: Cove, did you mean 'Coves'?");
+  EXPECT_HAS(source->panel().notes[0],
+             "without coordinates, because sites.csv does not list them: Cove, did you mean 'Coves'?");
   EXPECT_HAS(source->panel().notes[1], "in no panel file: Coves");
 }
 
@@ -272,7 +283,8 @@ TEST_F(CsvPanel, FilesOfSitesThatCannotBeUsedAreRefused) {
       {"name,lon,lat\na,1,95\n", "95 is not between -90 and 90 degrees"},
       {"name,lon,lat\na,one,50\n", "'one' is neither a number"},
       {"name,lon,lat\na,1,50\na,1,50\n", "site 'a' is listed twice"},
-      {"name,lon,lat\nx,1,50\ny,1,50\n", "none of the sites of the panel is listed: the panel has a, b, the list has x, y"},
+      {"name,lon,lat\nx,1,50\ny,1,50\n",
+       "none of the sites of the panel is listed: the panel has a, b, the list has x, y"},
   };
   for (const auto& [text, part] : cases) {
     request_.sites = write("sites.csv", text);
@@ -388,7 +400,8 @@ TEST_F(CsvPanel, ShuffledSplitsGiveTheWholePanel) {
       for (const std::size_t c : columns) text += ",s" + std::to_string(c);
       for (const std::size_t t : rows) {
         text += '\n' + axis.label(t);
-        for (const std::size_t c : columns) text += ',' + (std::isnan(truth[c][t]) ? std::string("NA") : number_text(truth[c][t]));
+        for (const std::size_t c : columns)
+          text += ',' + (std::isnan(truth[c][t]) ? std::string("NA") : number_text(truth[c][t]));
       }
       panel(text, "part" + std::to_string(from) + "_" + std::to_string(trial) + ".csv");
       from = to;
@@ -397,7 +410,8 @@ TEST_F(CsvPanel, ShuffledSplitsGiveTheWholePanel) {
     const auto source = open();
     ASSERT_EQ(source->panel().axis, axis);
     for (std::size_t i = 0; i < kSites; ++i)
-      expect_series(series(*source, i), truth[static_cast<std::size_t>(source->panel().geometry.site_names[i][1] - '0')]);
+      expect_series(series(*source, i),
+                    truth[static_cast<std::size_t>(source->panel().geometry.site_names[i][1] - '0')]);
   }
 }
 

@@ -1,7 +1,7 @@
 #include "io/time_decode.h"
 
-#include <algorithm>
 #include <gtest/gtest.h>
+#include <algorithm>
 #include <limits>
 #include <random>
 
@@ -69,22 +69,41 @@ constexpr KnownTime kKnown[] = {
 };
 
 TEST(TimeUnits, DecodedTimesAgreeWithCftime) {
-  for (const KnownTime& known : kKnown) EXPECT_EQ(decoded(known.value, known.units, known.calendar), known.expected) << known.units;
+  for (const KnownTime& known : kKnown)
+    EXPECT_EQ(decoded(known.value, known.units, known.calendar), known.expected) << known.units;
 }
 
 TEST(TimeUnits, EverySpellingOfAUnitIsRead) {
   const std::pair<const char*, const char*> cases[] = {
-      {"s", "2000-01-01T00:00:02"},           {"sec", "2000-01-01T00:00:02"},     {"secs", "2000-01-01T00:00:02"},
-      {"second", "2000-01-01T00:00:02"},      {"SECONDS", "2000-01-01T00:00:02"}, {"min", "2000-01-01T00:02:00"},
-      {"mins", "2000-01-01T00:02:00"},        {"Minute", "2000-01-01T00:02:00"},  {"minutes", "2000-01-01T00:02:00"},
-      {"h", "2000-01-01T02:00:00"},           {"hr", "2000-01-01T02:00:00"},      {"hrs", "2000-01-01T02:00:00"},
-      {"hour", "2000-01-01T02:00:00"},        {"hours", "2000-01-01T02:00:00"},   {"d", "2000-01-03"},
-      {"day", "2000-01-03"},                  {"Days", "2000-01-03"},             {"week", "2000-01-15"},
-      {"weeks", "2000-01-15"},                {"common_year", "2001-12-31"},      {"common_years", "2001-12-31"},
-      {"month", "2000-03-01"},                {"months", "2000-03-01"},           {"year", "2002-01-01"},
-      {"years", "2002-01-01"},                {"yr", "2002-01-01"},
+      {"s", "2000-01-01T00:00:02"},
+      {"sec", "2000-01-01T00:00:02"},
+      {"secs", "2000-01-01T00:00:02"},
+      {"second", "2000-01-01T00:00:02"},
+      {"SECONDS", "2000-01-01T00:00:02"},
+      {"min", "2000-01-01T00:02:00"},
+      {"mins", "2000-01-01T00:02:00"},
+      {"Minute", "2000-01-01T00:02:00"},
+      {"minutes", "2000-01-01T00:02:00"},
+      {"h", "2000-01-01T02:00:00"},
+      {"hr", "2000-01-01T02:00:00"},
+      {"hrs", "2000-01-01T02:00:00"},
+      {"hour", "2000-01-01T02:00:00"},
+      {"hours", "2000-01-01T02:00:00"},
+      {"d", "2000-01-03"},
+      {"day", "2000-01-03"},
+      {"Days", "2000-01-03"},
+      {"week", "2000-01-15"},
+      {"weeks", "2000-01-15"},
+      {"common_year", "2001-12-31"},
+      {"common_years", "2001-12-31"},
+      {"month", "2000-03-01"},
+      {"months", "2000-03-01"},
+      {"year", "2002-01-01"},
+      {"years", "2002-01-01"},
+      {"yr", "2002-01-01"},
   };
-  for (const auto& [unit, expected] : cases) EXPECT_EQ(decoded(2, std::string(unit) + " since 2000-01-01"), expected) << unit;
+  for (const auto& [unit, expected] : cases)
+    EXPECT_EQ(decoded(2, std::string(unit) + " since 2000-01-01"), expected) << unit;
   EXPECT_EQ(decoded(2000, "msec since 2000-01-01"), "2000-01-01T00:00:02");
   EXPECT_EQ(decoded(2e6, "microseconds since 2000-01-01"), "2000-01-01T00:00:02");
 }
@@ -176,7 +195,8 @@ TEST(TimeUnits, YearZeroIsRefusedOnlyWhereItDoesNotExist) {
 
 TEST(TimeUnits, AMissingUnitOrReferenceNamesTheLineToAddToTheJob) {
   EXPECT_HAS(message_of([] { static_cast<void>(decode({0}, "")); }), "time = { unit = \"days since 1981-01-01\" }");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({0}, "hours")); }), "time = { unit = \"hours since 1981-01-01\" }");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({0}, "hours")); }),
+             "time = { unit = \"hours since 1981-01-01\" }");
 }
 
 TEST(TimeUnits, CalendarsAreReadLenientlyOrRefusedWithTheNearestName) {
@@ -187,7 +207,8 @@ TEST(TimeUnits, CalendarsAreReadLenientlyOrRefusedWithTheNearestName) {
   EXPECT_EQ(notes.size(), 1U);
   EXPECT_EQ(decode({0}, "days since 1950-01-01", "none", &notes).calendar, Calendar::standard);
   EXPECT_EQ(notes.size(), 2U);
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({0}, "days since 1950-01-01", "gregorain")); }), "did you mean 'gregorian'?");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({0}, "days since 1950-01-01", "gregorain")); }),
+             "did you mean 'gregorian'?");
 }
 
 // ---- values ---------------------------------------------------------------------------------------------------------
@@ -217,14 +238,21 @@ TEST(TimeValues, WrittenDaysAreReadAsDates) {
   EXPECT_EQ(decoded(19810115, "day as %Y%m%d"), "1981-01-15");
   EXPECT_EQ(decoded(19810230, "day as %Y%m%d.%f", "360_day"), "1981-02-30");
   EXPECT_EQ(decoded(10115.25, "day as %Y%m%d.%f"), "0001-01-15T06:00:00");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({19810230}, "day as %Y%m%d.%f")); }), "is not a date of the standard calendar");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({19810230}, "day as %Y%m%d.%f")); }),
+             "is not a date of the standard calendar");
 }
 
 TEST(TimeValues, MissingAndAbsurdValuesNameTheirStep) {
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({0, kNaN, 2}, "days since 1981-01-01")); }), "time value 2 of 3: nan is missing");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({0, 1, 9.969209968386869e36}, "days since 1981-01-01")); }),
+  EXPECT_HAS(message_of([] {
+               static_cast<void>(decode({0, kNaN, 2}, "days since 1981-01-01"));
+             }),
+             "time value 2 of 3: nan is missing");
+  EXPECT_HAS(message_of([] {
+               static_cast<void>(decode({0, 1, 9.969209968386869e36}, "days since 1981-01-01"));
+             }),
              "lies beyond any date");
-  EXPECT_HAS(message_of([] { static_cast<void>(decode({kInfinity}, "months since 1981-01-01")); }), "lies beyond any date");
+  EXPECT_HAS(message_of([] { static_cast<void>(decode({kInfinity}, "months since 1981-01-01")); }),
+             "lies beyond any date");
   EXPECT_HAS(message_of([] { static_cast<void>(decode({-kInfinity}, "day as %Y%m%d.%f")); }), "lies beyond any date");
 }
 
@@ -239,7 +267,8 @@ TEST(TimeValues, EverySecondOfALargeDayNumberSurvivesTheRoundTrip) {
 
 // ---- join -----------------------------------------------------------------------------------------------------------
 
-FileTimes file_of(const std::string& name, const std::vector<std::string>& stamps, Calendar calendar = Calendar::standard) {
+FileTimes file_of(const std::string& name, const std::vector<std::string>& stamps,
+                  Calendar calendar = Calendar::standard) {
   FileTimes file{name, calendar, {}};
   for (const std::string& stamp : stamps) file.times.push_back(parse_iso(calendar, stamp).value());
   return file;
@@ -249,7 +278,8 @@ JoinedAxis join_one(const std::vector<std::string>& stamps, Calendar calendar = 
   return join_times({file_of("harrow.nc", stamps, calendar)}, std::nullopt, std::nullopt);
 }
 
-void expect_axis(const JoinedAxis& joined, const std::string& step, const std::string& first, const std::string& last, std::size_t size) {
+void expect_axis(const JoinedAxis& joined, const std::string& step, const std::string& first, const std::string& last,
+                 std::size_t size) {
   EXPECT_EQ(duration_text(joined.axis.step()), step);
   ASSERT_EQ(joined.axis.size(), size);
   EXPECT_EQ(joined.axis.label(0), first);
@@ -258,52 +288,61 @@ void expect_axis(const JoinedAxis& joined, const std::string& step, const std::s
 
 TEST(Join, MonthlyStampsOfEveryConventionAreMonthly) {
   expect_axis(join_one({"2001-01-01", "2001-02-01", "2001-03-01", "2001-04-01"}), "P1M", "2001-01-01", "2001-04-01", 4);
-  expect_axis(join_one({"2001-01-16T12:00", "2001-02-15", "2001-03-16T12:00", "2001-04-16"}), "P1M", "2001-01-16T12:00:00",
-              "2001-04-16T12:00:00", 4);
+  expect_axis(join_one({"2001-01-16T12:00", "2001-02-15", "2001-03-16T12:00", "2001-04-16"}), "P1M",
+              "2001-01-16T12:00:00", "2001-04-16T12:00:00", 4);
   expect_axis(join_one({"2001-02-28", "2001-03-31", "2001-04-30", "2001-05-31"}), "P1M", "2001-02-28", "2001-05-31", 4);
   expect_axis(join_one({"2001-01-15", "2001-02-15", "2001-03-15"}), "P1M", "2001-01-15", "2001-03-15", 3);
   expect_axis(join_one({"2001-01-01", "2001-02-01"}), "P1M", "2001-01-01", "2001-02-01", 2);
-  expect_axis(join_one({"2001-01-16", "2001-02-16", "2001-03-16"}, Calendar::day360), "P1M", "2001-01-16", "2001-03-16", 3);
+  expect_axis(join_one({"2001-01-16", "2001-02-16", "2001-03-16"}, Calendar::day360), "P1M", "2001-01-16", "2001-03-16",
+              3);
 }
 
 TEST(Join, MonthlyDataWithSeveralMonthsMissingAreStillMonthly) {
-  const JoinedAxis joined = join_one({"2001-01-16", "2001-02-15", "2001-03-16", "2001-06-16", "2001-07-16", "2002-01-16"});
+  const JoinedAxis joined =
+      join_one({"2001-01-16", "2001-02-15", "2001-03-16", "2001-06-16", "2001-07-16", "2002-01-16"});
   expect_axis(joined, "P1M", "2001-01-16", "2002-01-16", 13);
   EXPECT_EQ(joined.steps_present, 6U);
   EXPECT_EQ(joined.axis_step[0], (std::vector<std::int64_t>{0, 1, 2, 5, 6, 12}));
   ASSERT_EQ(joined.notes.size(), 1U);
-  EXPECT_EQ(joined.notes[0], "7 steps of 13 are in no file and count as missing; the longest run of them is 5 (2001-08-16 to 2001-12-16)");
+  EXPECT_EQ(
+      joined.notes[0],
+      "7 steps of 13 are in no file and count as missing; the longest run of them is 5 (2001-08-16 to 2001-12-16)");
 }
 
 TEST(Join, SummerMonthsOfEachYearAreMonthly) {
-  expect_axis(join_one({"2001-06-16", "2001-07-16", "2001-08-16", "2002-06-16", "2002-07-16", "2002-08-16"}), "P1M", "2001-06-16",
-              "2002-08-16", 15);
+  expect_axis(join_one({"2001-06-16", "2001-07-16", "2001-08-16", "2002-06-16", "2002-07-16", "2002-08-16"}), "P1M",
+              "2001-06-16", "2002-08-16", 15);
 }
 
 TEST(Join, StampsThatWanderWithinTheirMonthAreMonthly) {
-  const auto joined = join_times({file_of("a.nc", {"2001-01-01", "2001-02-01", "2001-03-01", "2001-04-01", "2001-05-01"}),
-                                  file_of("b.nc", {"2001-06-16", "2001-07-16", "2001-08-16"})},
-                                 std::nullopt, std::nullopt);
+  const auto joined =
+      join_times({file_of("a.nc", {"2001-01-01", "2001-02-01", "2001-03-01", "2001-04-01", "2001-05-01"}),
+                  file_of("b.nc", {"2001-06-16", "2001-07-16", "2001-08-16"})},
+                 std::nullopt, std::nullopt);
   expect_axis(joined, "P1M", "2001-01-01", "2001-08-01", 8);
   EXPECT_EQ(joined.steps_present, 8U);
 }
 
 TEST(Join, RoundingNoiseAroundTheBeginningOfAMonthDoesNotMoveAStepToTheMonthBefore) {
-  const auto joined = join_one({"2001-01-01T00:20", "2001-01-31T23:40", "2001-03-01", "2001-03-31T23:30", "2001-05-01T00:10"});
+  const auto joined =
+      join_one({"2001-01-01T00:20", "2001-01-31T23:40", "2001-03-01", "2001-03-31T23:30", "2001-05-01T00:10"});
   expect_axis(joined, "P1M", "2001-01-01", "2001-05-01", 5);
   EXPECT_EQ(joined.axis_step[0], (std::vector<std::int64_t>{0, 1, 2, 3, 4}));
 }
 
 TEST(Join, MultiplesOfMonthsAndYearsAreFound) {
-  expect_axis(join_one({"2001-01-01", "2001-04-01", "2001-07-01", "2001-10-01", "2002-01-01"}), "P3M", "2001-01-01", "2002-01-01", 5);
+  expect_axis(join_one({"2001-01-01", "2001-04-01", "2001-07-01", "2001-10-01", "2002-01-01"}), "P3M", "2001-01-01",
+              "2002-01-01", 5);
   expect_axis(join_one({"1999-01-01", "2000-01-01", "2001-01-01", "2003-01-01"}), "P1Y", "1999-01-01", "2003-01-01", 5);
   expect_axis(join_one({"1999-07-02", "2000-07-01", "2001-07-02"}), "P1Y", "1999-07-02", "2001-07-02", 3);
   expect_axis(join_one({"1990-06-30", "2000-06-30", "2010-06-30"}), "P10Y", "1990-06-30", "2010-06-30", 3);
   expect_axis(join_one({"1999-12-31", "2000-12-31", "2001-12-31"}), "P1Y", "1999-12-31", "2001-12-31", 3);
-  expect_axis(join_one({"2001-01-01", "2002-01-01", "2003-01-01"}, Calendar::day360), "P1Y", "2001-01-01", "2003-01-01", 3);
+  expect_axis(join_one({"2001-01-01", "2002-01-01", "2003-01-01"}, Calendar::day360), "P1Y", "2001-01-01", "2003-01-01",
+              3);
 }
 
-std::vector<std::string> days(const std::string& first, std::size_t count, Calendar calendar = Calendar::standard, Seconds step = kDay) {
+std::vector<std::string> days(const std::string& first, std::size_t count, Calendar calendar = Calendar::standard,
+                              Seconds step = kDay) {
   std::vector<std::string> out;
   const Seconds from = parse_iso(calendar, first).value();
   for (std::size_t i = 0; i < count; ++i) out.push_back(iso_text(calendar, from + static_cast<Seconds>(i) * step));
@@ -312,10 +351,14 @@ std::vector<std::string> days(const std::string& first, std::size_t count, Calen
 
 TEST(Join, FixedStepsAreFound) {
   expect_axis(join_one(days("2001-01-01", 400)), "P1D", "2001-01-01", "2002-02-04", 400);
-  expect_axis(join_one(days("2001-01-01T12:00", 60, Calendar::noleap)), "P1D", "2001-01-01T12:00:00", "2001-03-01T12:00:00", 60);
-  expect_axis(join_one(days("2001-01-01T03:00", 50, Calendar::standard, 21600)), "PT6H", "2001-01-01T03:00:00", "2001-01-13T09:00:00", 50);
-  expect_axis(join_one(days("2001-01-01", 50, Calendar::standard, 90000)), "PT25H", "2001-01-01", "2001-02-21T01:00:00", 50);
-  expect_axis(join_one(days("2001-01-01", 2, Calendar::standard, 90000)), "PT25H", "2001-01-01", "2001-01-02T01:00:00", 2);
+  expect_axis(join_one(days("2001-01-01T12:00", 60, Calendar::noleap)), "P1D", "2001-01-01T12:00:00",
+              "2001-03-01T12:00:00", 60);
+  expect_axis(join_one(days("2001-01-01T03:00", 50, Calendar::standard, 21600)), "PT6H", "2001-01-01T03:00:00",
+              "2001-01-13T09:00:00", 50);
+  expect_axis(join_one(days("2001-01-01", 50, Calendar::standard, 90000)), "PT25H", "2001-01-01", "2001-02-21T01:00:00",
+              50);
+  expect_axis(join_one(days("2001-01-01", 2, Calendar::standard, 90000)), "PT25H", "2001-01-01", "2001-01-02T01:00:00",
+              2);
   expect_axis(join_one(days("2001-01-01", 52, Calendar::standard, 7 * kDay)), "P7D", "2001-01-01", "2001-12-24", 52);
 }
 
@@ -345,14 +388,16 @@ TEST(Join, ModelDaysWithoutLeapDaysOnAStandardCalendarAreDailyWithGaps) {
 }
 
 TEST(Join, StepsThatNeverFollowEachOtherDirectlyAreFoundToo) {
-  const JoinedAxis joined = join_one({"2001-01-01", "2001-01-03", "2001-01-06", "2001-01-08", "2001-01-11", "2001-01-13", "2001-01-16"});
+  const JoinedAxis joined =
+      join_one({"2001-01-01", "2001-01-03", "2001-01-06", "2001-01-08", "2001-01-11", "2001-01-13", "2001-01-16"});
   expect_axis(joined, "P1D", "2001-01-01", "2001-01-16", 16);
   EXPECT_EQ(joined.steps_present, 7U);
 }
 
 TEST(Join, HoursStoredAsFloat32DaysAreSnapped) {
   std::vector<double> values;
-  for (int hour = 0; hour < 1000; ++hour) values.push_back(static_cast<double>(static_cast<float>(51000 + hour / 24.0)));
+  for (int hour = 0; hour < 1000; ++hour)
+    values.push_back(static_cast<double>(static_cast<float>(51000 + hour / 24.0)));
   const FileTimes file = decode(values, "days since 1850-01-01");
   const JoinedAxis joined = join_times({file}, std::nullopt, std::nullopt);
   expect_axis(joined, "PT1H", "1989-08-20", "1989-09-30T15:00:00", 1000);
@@ -377,7 +422,8 @@ TEST(Join, ThirtySixStampsAYearAreEvenOnAverageAndTheShiftIsSaid) {
   std::vector<std::string> stamps;
   for (int year = 2001; year < 2005; ++year)
     for (int month = 1; month <= 12; ++month)
-      for (const int day : {1, 11, 21}) stamps.push_back(iso_text(Calendar::standard, seconds_of(Calendar::standard, {year, month, day})));
+      for (const int day : {1, 11, 21})
+        stamps.push_back(iso_text(Calendar::standard, seconds_of(Calendar::standard, {year, month, day})));
   const JoinedAxis joined = join_one(stamps);
   EXPECT_EQ(joined.axis.size(), 144U);
   EXPECT_EQ(joined.steps_present, 144U);
@@ -411,14 +457,18 @@ TEST(Join, AGivenStepIsKept) {
   ASSERT_EQ(monthly.overlaps.size(), 1U);  // two visits in January
   EXPECT_EQ(monthly.overlaps[0].step_a, 0U);
   EXPECT_EQ(monthly.overlaps[0].step_b, 1U);
-  const std::string message = message_of([&] { static_cast<void>(join_times(files, TimeStep{StepKind::seconds, 10 * kDay}, std::nullopt)); });
+  const std::string message = message_of([&] {
+    static_cast<void>(join_times(files, TimeStep{StepKind::seconds, 10 * kDay}, std::nullopt));
+  });
   EXPECT_HAS(message, "do not fit the step P10D");
 }
 
 TEST(Join, FilesComeInAnyOrderAndWithTheirOwnEpochs) {
   std::vector<std::string> notes;
-  const FileTimes late = decode_times("late.nc", "time", std::vector<double>{0, 24, 48}, {"hours since 2001-01-03", ""}, notes);
-  const FileTimes early = decode_times("early.nc", "time", std::vector<double>{365, 366}, {"days since 2000-01-02", ""}, notes);
+  const FileTimes late =
+      decode_times("late.nc", "time", std::vector<double>{0, 24, 48}, {"hours since 2001-01-03", ""}, notes);
+  const FileTimes early =
+      decode_times("early.nc", "time", std::vector<double>{365, 366}, {"days since 2000-01-02", ""}, notes);
   const JoinedAxis joined = join_times({late, early}, std::nullopt, std::nullopt);
   expect_axis(joined, "P1D", "2001-01-01", "2001-01-05", 5);
   EXPECT_EQ(joined.axis_step[0], (std::vector<std::int64_t>{2, 3, 4}));
@@ -462,16 +512,21 @@ TEST(Join, TimesOutOfOrderAreSortedAndNoted) {
 TEST(Join, MixedCalendarsAreRefusedNamingBothFilesUnlessTheirDatesAgree) {
   const std::vector<std::string> stamps{"2001-01-01", "2001-01-02"};
   const std::string message = message_of([&] {
-    static_cast<void>(join_times({file_of("a.nc", stamps), file_of("b.nc", stamps, Calendar::noleap)}, std::nullopt, std::nullopt));
+    static_cast<void>(
+        join_times({file_of("a.nc", stamps), file_of("b.nc", stamps, Calendar::noleap)}, std::nullopt, std::nullopt));
   });
   EXPECT_HAS(message, "a.nc has 'standard', b.nc has 'noleap'");
   const std::vector<std::string> later{"2001-01-03"};
-  EXPECT_EQ(join_times({file_of("a.nc", stamps), file_of("b.nc", later, Calendar::proleptic_gregorian)}, std::nullopt, std::nullopt)
-                .axis.size(), 3U);
+  EXPECT_EQ(join_times({file_of("a.nc", stamps), file_of("b.nc", later, Calendar::proleptic_gregorian)}, std::nullopt,
+                       std::nullopt)
+                .axis.size(),
+            3U);
 }
 
 TEST(Join, AFileWithoutTimesIsPassedOverButNotAWholeArchiveOfThem) {
-  EXPECT_EQ(join_times({file_of("a.nc", {}), file_of("b.nc", {"2001-01-01", "2001-01-02"})}, std::nullopt, std::nullopt).steps_present, 2U);
+  EXPECT_EQ(join_times({file_of("a.nc", {}), file_of("b.nc", {"2001-01-01", "2001-01-02"})}, std::nullopt, std::nullopt)
+                .steps_present,
+            2U);
   EXPECT_HAS(message_of([] { static_cast<void>(join_one({})); }), "no file holds a time step");
 }
 
@@ -508,20 +563,24 @@ TEST(Period, ReachingBeyondTheFilesIsCutAndNoted) {
 
 TEST(Period, AWholeMonthOrYearAroundTheStampsIsNotBeyondThem) {
   std::vector<std::string> stamps;
-  for (int month = 1; month <= 12; ++month) stamps.push_back("2001-" + std::string(month < 10 ? "0" : "") + std::to_string(month) + "-16");
+  for (int month = 1; month <= 12; ++month)
+    stamps.push_back("2001-" + std::string(month < 10 ? "0" : "") + std::to_string(month) + "-16");
   const JoinedAxis joined = join_period(stamps, "2001-01-01", "2001-12-31");
   EXPECT_EQ(joined.axis.size(), 12U);
   EXPECT_TRUE(joined.notes.empty());
 }
 
 TEST(Period, OutsideTheFilesItIsAnErrorThatSaysWhatTheyCover) {
-  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 100), "1990", "1999")); }), "cover 2001-01-01 to 2001-04-10");
+  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 100), "1990", "1999")); }),
+             "cover 2001-01-01 to 2001-04-10");
   EXPECT_HAS(message_of([] {
                static_cast<void>(join_period({"2001-01-01", "2001-01-02", "2001-02-01"}, "2001-01-10", "2001-01-20"));
              }),
              "only before and after");
-  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 9), "2001-02", "2001-01")); }), "begins after it ends");
-  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 9), "Monday", "2001-01")); }), "'Monday' in [input] period");
+  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 9), "2001-02", "2001-01")); }),
+             "begins after it ends");
+  EXPECT_HAS(message_of([] { static_cast<void>(join_period(days("2001-01-01", 9), "Monday", "2001-01")); }),
+             "'Monday' in [input] period");
 }
 
 TEST(Period, DaysThatTheCalendarLacksMeanTheNearestInside) {
@@ -546,7 +605,8 @@ TEST(Cap, AnAxisBeyondFiftyMillionStepsIsRefused) {
   FileTimes file{"harrow.nc", Calendar::standard, {}};
   for (int i = 0; i < 600000; ++i) file.times.push_back(i);
   file.times.push_back(59'000'000);  // just over 1 % would be there
-  EXPECT_HAS(message_of([&] { static_cast<void>(join_times({file}, std::nullopt, std::nullopt)); }), "59 000 001 steps (every second)");
+  EXPECT_HAS(message_of([&] { static_cast<void>(join_times({file}, std::nullopt, std::nullopt)); }),
+             "59 000 001 steps (every second)");
 }
 
 // Law: however an archive is split into files and in whatever order they come, the axis is that of the whole, and every
@@ -555,14 +615,16 @@ TEST(Join, ShuffledSplitsGiveTheAxisOfTheWhole) {
   std::mt19937 random(5);
   const TimeStep steps[] = {{StepKind::seconds, 3600}, {StepKind::seconds, kDay}, {StepKind::seconds, 8 * kDay},
                             {StepKind::months, 1},     {StepKind::months, 3},     {StepKind::years, 1}};
-  const Calendar calendars[] = {Calendar::standard, Calendar::julian, Calendar::noleap, Calendar::all_leap, Calendar::day360};
+  const Calendar calendars[] = {Calendar::standard, Calendar::julian, Calendar::noleap, Calendar::all_leap,
+                                Calendar::day360};
   for (int trial = 0; trial < 600; ++trial) {
     const Calendar calendar = calendars[trial % 5];
     const TimeStep step = steps[trial % 6];
     const int day = trial % 4 == 0 ? 31 : 1 + static_cast<int>(random() % 28);
     const Date first{1890 + static_cast<int>(random() % 100), 1 + static_cast<int>(random() % 12), std::min(day, 30)};
     const Date start{first.year, first.month, std::min(first.day, days_in_month(calendar, first.year, first.month))};
-    const TimeAxis truth(calendar, step, seconds_of(calendar, start, 3600 * static_cast<Seconds>(random() % 24)), 30 + random() % 200);
+    const TimeAxis truth(calendar, step, seconds_of(calendar, start, 3600 * static_cast<Seconds>(random() % 24)),
+                         30 + random() % 200);
     std::vector<FileTimes> files(1 + random() % 5, FileTimes{"", calendar, {}});
     std::vector<std::vector<std::int64_t>> expected(files.size());
     for (std::size_t t = 0; t < truth.size(); ++t) {
@@ -573,18 +635,21 @@ TEST(Join, ShuffledSplitsGiveTheAxisOfTheWhole) {
       expected[file].push_back(static_cast<std::int64_t>(t));
     }
     const JoinedAxis joined = join_times(files, std::nullopt, std::nullopt);
-    ASSERT_EQ(joined.axis.size(), truth.size()) << trial << ' ' << duration_text(step) << ' ' << duration_text(joined.axis.step());
+    ASSERT_EQ(joined.axis.size(), truth.size())
+        << trial << ' ' << duration_text(step) << ' ' << duration_text(joined.axis.step());
     ASSERT_EQ(joined.axis.step(), step);
     ASSERT_EQ(joined.axis_step, expected);
     ASSERT_TRUE(joined.overlaps.empty());
-    for (std::size_t t = 0; t < truth.size(); ++t) ASSERT_EQ(joined.axis.index_of(truth.time(t)), static_cast<std::int64_t>(t));
+    for (std::size_t t = 0; t < truth.size(); ++t)
+      ASSERT_EQ(joined.axis.index_of(truth.time(t)), static_cast<std::int64_t>(t));
   }
 }
 
 // Law: no text makes the parser do anything but decode or refuse.
 TEST(TimeUnits, RandomTextIsDecodedOrRefused) {
   std::mt19937 random(3);
-  const std::string pieces[] = {"days", "since", " ", "-", "+", ":", "T", "Z", "1981", "01", "31", "99999999999", ".", "@", "month", "s", "\0", "%"};
+  const std::string pieces[] = {"days", "since", " ",           "-", "+", ":",     "T", "Z",  "1981",
+                                "01",   "31",    "99999999999", ".", "@", "month", "s", "\0", "%"};
   int refused = 0;
   for (int trial = 0; trial < 20000; ++trial) {
     std::string units = trial % 2 == 0 ? "days since " : "";

@@ -20,8 +20,8 @@ struct Date {
 [[nodiscard]] std::string_view calendar_name(Calendar calendar);
 [[nodiscard]] int days_in_month(Calendar calendar, int year, int month);
 [[nodiscard]] int days_in_year(Calendar calendar, int year);
-/// True if such a day exists in the calendar (1582-10-05..14 do not exist in `standard`, year 0 neither in `standard` nor
-/// `julian`, where year -1 is followed by year 1).
+/// True if such a day exists in the calendar (1582-10-05..14 do not exist in `standard`, year 0 neither in `standard`
+/// nor `julian`, where year -1 is followed by year 1).
 [[nodiscard]] bool valid_date(Calendar calendar, Date date);
 /// Days since 1970-01-01 of the same calendar (negative before). Requires a valid date.
 [[nodiscard]] std::int64_t day_number(Calendar calendar, Date date);
@@ -39,21 +39,23 @@ struct Moment {
   Seconds clock = 0;
 };
 [[nodiscard]] Moment moment_of(Calendar calendar, Seconds time);
-/// Consecutive number of a calendar month (year * 12 + month - 1, with no year left out where the calendar has no year 0),
-/// and the first day of such a month.
+/// Consecutive number of a calendar month (year * 12 + month - 1, with no year left out where the calendar has no year
+/// 0), and the first day of such a month.
 [[nodiscard]] std::int64_t month_number(Calendar calendar, const Date& date);
 [[nodiscard]] Date month_start(Calendar calendar, std::int64_t month);
 /// The same time of day `months` calendar months later (negative: earlier), on the same day of the month, or on
 /// `day_of_month` if given, clamped to the length of the month.
 [[nodiscard]] Seconds add_months(Calendar calendar, Seconds time, std::int64_t months, int day_of_month = 0);
 /// Division rounded towards minus infinity, so that times before the epoch fall on the right day.
-constexpr std::int64_t floor_div(std::int64_t a, std::int64_t b) { return a / b - (a % b != 0 && (a < 0) != (b < 0) ? 1 : 0); }
+constexpr std::int64_t floor_div(std::int64_t a, std::int64_t b) {
+  return a / b - (a % b != 0 && (a < 0) != (b < 0) ? 1 : 0);
+}
 
 /// "1981-01-15" or, when the time of day is not midnight, "1981-01-15T12:00:00".
 [[nodiscard]] std::string iso_text(Calendar calendar, Seconds time);
 /// ISO 8601 date or date-time ("1981", "1981-01", "1981-01-31", "19810131", "1981-01-31T06:00", a blank for the T, with
-/// optional Z, fractions of a second rounded; years of 4 to 6 digits, negative ones too); nothing if malformed or not a date
-/// of the calendar. `end_of`: the last second of the named year, month or day instead of the first.
+/// optional Z, fractions of a second rounded; years of 4 to 6 digits, negative ones too); nothing if malformed or not a
+/// date of the calendar. `end_of`: the last second of the named year, month or day instead of the first.
 [[nodiscard]] std::optional<Seconds> parse_iso(Calendar calendar, std::string_view text, bool end_of = false);
 
 }  // namespace lagscape

@@ -30,10 +30,10 @@ struct GridMapping {
 /// Where the cells are. Grids are row-major: cell = row * cols + col. Sites: rows = 1, cols = number of sites.
 struct Geometry {
   GeometryKind kind = GeometryKind::index;
-  SpaceAxis y, x;                      ///< unused for sites
-  std::vector<double> lat, lon;        ///< per cell: curvilinear, projected with 2-D coordinates, sites (empty if unknown)
-  std::vector<double> altitude;        ///< sites only, may be empty
-  std::vector<std::string> site_names; ///< sites only
+  SpaceAxis y, x;                ///< unused for sites
+  std::vector<double> lat, lon;  ///< per cell: curvilinear, projected with 2-D coordinates, sites (empty if unknown)
+  std::vector<double> altitude;  ///< sites only, may be empty
+  std::vector<std::string> site_names;  ///< sites only
   std::optional<GridMapping> mapping;
   std::size_t rows = 0, cols = 0;
 

@@ -16,12 +16,15 @@ struct CellRange {
 
 /// Counts of values set aside while decoding, by reason (per band, added up by the caller).
 struct ValueCounts {
-  std::size_t fill = 0;          ///< equal to the fill or a missing value, or NaN
+  std::size_t fill = 0;  ///< equal to the fill or a missing value, or NaN
   std::size_t infinite = 0;
   std::size_t out_of_range = 0;  ///< outside the file's or the job's valid range
   std::size_t job_missing = 0;   ///< equal to one of the job's missing_values
   ValueCounts& operator+=(const ValueCounts& other) {
-    fill += other.fill; infinite += other.infinite; out_of_range += other.out_of_range; job_missing += other.job_missing;
+    fill += other.fill;
+    infinite += other.infinite;
+    out_of_range += other.out_of_range;
+    job_missing += other.job_missing;
     return *this;
   }
 };

@@ -39,9 +39,9 @@ class TimeAxis {
   [[nodiscard]] std::size_t size() const noexcept { return size_; }
   /// Nominal time of step t (monthly: same day of month and time of day as the origin, clamped to the month's length).
   [[nodiscard]] Seconds time(std::size_t t) const { return nominal(static_cast<std::int64_t>(t)); }
-  /// Step whose slot holds this time: nearest step for fixed lengths, same month or year for calendar steps (a slot of k
-  /// months begins with the month of its nominal time).
-  /// May be negative or >= size(); off_seconds receives the distance from the nominal time when given.
+  /// Step whose slot holds this time: nearest step for fixed lengths, same month or year for calendar steps (a slot of
+  /// k months begins with the month of its nominal time). May be negative or >= size(); off_seconds receives the
+  /// distance from the nominal time when given.
   [[nodiscard]] std::int64_t index_of(Seconds time, Seconds* off_seconds = nullptr) const;
   /// Axis of steps [first, first + count).
   [[nodiscard]] TimeAxis slice(std::size_t first, std::size_t count) const;
@@ -61,8 +61,8 @@ class TimeAxis {
 
   /// Unit in which lags and memory times are given: "month", "year", "day", "hour", "minute", "second" ...
   [[nodiscard]] std::string lag_unit() const;
-  /// ... and how many of them one step is (3-monthly: 3; 6-hourly: 6; daily: 1; steps of 2 days and more that are no whole
-  /// number of hours are given in days and fractions).
+  /// ... and how many of them one step is (3-monthly: 3; 6-hourly: 6; daily: 1; steps of 2 days and more that are no
+  /// whole number of hours are given in days and fractions).
   [[nodiscard]] double lag_unit_per_step() const;
   [[nodiscard]] std::string label(std::size_t t) const { return iso_text(calendar_, time(t)); }
   /// CF reference for times written to results: "days since 1970-01-01 00:00:00".
