@@ -285,7 +285,7 @@ TEST(ChooseOrder, TakesTheSmallestCriterion) {
   std::array<int, 11> seen{};
   for (int repeat = 0; repeat < 300; ++repeat) {
     Coefficients partials(10);
-    for (std::size_t j = 0; j < 10; ++j) partials[j] = (1.4 * draw.uniform() - 0.7) / static_cast<double>(j + 1);
+    for (std::size_t j = 0; j < 10; ++j) partials[j] = 0.8 * draw.uniform() - 0.4;
     for (const OrderCriterion criterion : {OrderCriterion::bic, OrderCriterion::aic, OrderCriterion::aicc}) {
       const OrderChoice choice{criterion, 1, 100, 13};
       const int order = choose_order(partials, 10, choice);
