@@ -3,7 +3,7 @@
 #include <string_view>
 #include <vector>
 
-#include "io/nc_handle.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 

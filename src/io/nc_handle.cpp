@@ -1,4 +1,4 @@
-#include "io/nc_handle.h"
+#include "lagscape/io/nc_handle.h"
 
 #include <fmt/format.h>
 #include <netcdf_filter.h>

@@ -9,9 +9,9 @@
 #include "io/result_writer_axes.h"
 #include "io/result_writer_csv.h"
 #include "io/result_writer_netcdf.h"
-#include "io/result_writer_parts.h"
 #include "io/result_writer_spool.h"
 #include "lagscape/base/error.h"
+#include "lagscape/io/part_file.h"
 
 namespace lagscape {
 namespace {

@@ -7,8 +7,8 @@
 #include <string>
 #include <string_view>
 
-#include "io/nc_handle.h"
 #include "lagscape/base/text.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 namespace {

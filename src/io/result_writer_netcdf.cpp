@@ -12,9 +12,9 @@
 #include <set>
 #include <utility>
 
-#include "io/nc_handle.h"
 #include "io/result_writer_axes.h"
 #include "lagscape/base/text.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 namespace {

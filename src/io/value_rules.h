@@ -4,8 +4,8 @@
 #include <string>
 #include <vector>
 
-#include "io/nc_handle.h"
 #include "lagscape/io/archive.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 

@@ -4,8 +4,8 @@
 #include <utility>
 #include <vector>
 
-#include "io/nc_handle.h"
 #include "lagscape/grid/geometry.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 

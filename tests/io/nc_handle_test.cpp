@@ -1,4 +1,4 @@
-#include "io/nc_handle.h"
+#include "lagscape/io/nc_handle.h"
 
 #include <fcntl.h>
 #include <sys/file.h>

@@ -1,4 +1,4 @@
-#include "io/result_writer_parts.h"
+#include "lagscape/io/part_file.h"
 
 #include <fcntl.h>
 #include <fmt/format.h>
