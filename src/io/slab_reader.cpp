@@ -160,9 +160,12 @@ class SlabReader {
     return std::max<std::size_t>(1, room >= chunk ? room / chunk * chunk : chunk);
   }
 
+  /// A slab from `from` on that ends on the last chunk edge within `length`, or is `length` long where no edge lies in it
+  /// (cutting it short there would only read its chunk once more).
   [[nodiscard]] std::size_t to_chunk_edge(DimRole role, std::size_t from, std::size_t length) const {
     const auto at = layout_.position(role);
-    return length - std::min(length - 1, at ? from % chunk_[*at] : 0);
+    const std::size_t chunk = at ? chunk_[*at] : 1, edge = (from + length) / chunk * chunk;
+    return edge > from ? edge - from : length;
   }
 
   void read_slabs(const Span& span, std::size_t row, std::size_t rows, std::size_t first, std::size_t count,
