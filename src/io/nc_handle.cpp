@@ -1,8 +1,10 @@
 #include "lagscape/io/nc_handle.h"
 
 #include <fmt/format.h>
+#include <hdf5.h>
 #include <netcdf_filter.h>
 
+#include <algorithm>
 #include <cerrno>
 #include <cstring>
 #include <filesystem>
@@ -16,6 +18,10 @@ namespace lagscape {
 namespace {
 
 constexpr int kFilterError = NC_EFILTER;
+
+// HDF5 1.10 tidies up when the program ends, and then crashes over a file whose last bytes a full disk refused: the
+// exit code would be the crash's. We close every file ourselves. It must be told before its first use, hence here.
+[[maybe_unused]] const herr_t no_tidying = H5dont_atexit();
 
 [[noreturn]] void refuse_open(int status, const std::string& path) {
   const std::string where = "file: " + path;
@@ -155,6 +161,14 @@ NcFile NcFile::create(const std::string& path, int mode) {
   return {id, path, ErrorKind::output};
 }
 
+NcFile NcFile::reopen(const std::string& path) {
+  int id = -1;
+  const int status = nc_open(path.c_str(), NC_WRITE, &id);
+  NcFile file(id, path, ErrorKind::output);
+  file.check(status, "opening the file again");
+  return file;
+}
+
 NcFile::NcFile(NcFile&& other) noexcept
     : id_(std::exchange(other.id_, -1)), path_(std::move(other.path_)), kind_(other.kind_) {}
 
@@ -178,9 +192,10 @@ void NcFile::check(int status, std::string_view doing, std::string_view variable
   if (status == NC_NOERR) return;
   const std::string where =
       variable.empty() ? "file: " + path_ : fmt::format("file: {}, variable: {}", path_, variable);
-  const char* const fix = kind_ == ErrorKind::input
-                              ? "check that the file is whole (ncdump reads all of it); fetch it again if not"
-                              : "check that the disk has room and can be written to";
+  const char* const fix =
+      kind_ == ErrorKind::input ? "check that the file is whole (ncdump reads all of it); fetch it again if not"
+      : status == NC_EVARSIZE || status == NC_EDIMSIZE ? "choose a format that holds so large a variable: netCDF-4 does"
+                                                       : "check that the disk has room and can be written to";
   const bool system = status > 0;  // an errno
   throw Error(kind_, fmt::format("{} failed: {}", doing, system ? std::strerror(status) : nc_strerror(status)), where,
               fix);
@@ -197,6 +212,13 @@ void NcFile::check(int status, std::string_view doing, const NcVariable& variabl
               "Blosc) or name its "
               "folder in HDF5_PLUGIN_PATH; or rewrite the file: nccopy -F none -d 1 IN.nc OUT.nc where the filter is "
               "installed");
+}
+
+void NcFile::check_variable(int status, std::string_view doing, int variable) const {
+  if (status == NC_NOERR) return;
+  char name[NC_MAX_NAME + 1] = {};
+  if (variable != NC_GLOBAL) nc_inq_varname(id_, variable, name);
+  check(status, doing, name);
 }
 
 std::vector<NcVariable> NcFile::variables() const {
@@ -324,8 +346,22 @@ int NcFile::define_variable(const std::string& name, nc_type type, std::span<con
   return id;
 }
 
+void NcFile::define_storage(int variable, std::span<const std::size_t> chunks, int deflate) {
+  const int layout = chunks.empty() ? NC_CONTIGUOUS : NC_CHUNKED;
+  check_variable(nc_def_var_chunking(id_, variable, layout, chunks.data()), "defining chunks", variable);
+  if (deflate > 0) check_variable(nc_def_var_deflate(id_, variable, 1, 1, deflate), "defining deflate", variable);
+}
+
+void NcFile::define_fill(int variable, double value) {
+  nc_type type = NC_NAT;
+  check_variable(nc_inq_vartype(id_, variable, &type), "defining the fill value", variable);
+  check_variable(nc_put_att_double(id_, variable, "_FillValue", type, 1, &value), "defining the fill value", variable);
+}
+
 void NcFile::put_text(int variable, const std::string& name, const std::string& value) {
-  check(nc_put_att_text(id_, variable, name.c_str(), value.size(), value.data()), "writing attribute " + name);
+  if (value.empty()) return;
+  check_variable(nc_put_att_text(id_, variable, name.c_str(), value.size(), value.data()), "writing attribute " + name,
+                 variable);
 }
 
 void NcFile::put_attributes(int variable, const Attributes& attributes) {
@@ -334,20 +370,57 @@ void NcFile::put_attributes(int variable, const Attributes& attributes) {
     if (const auto* text = std::get_if<std::string>(&one.value)) {
       put_text(variable, one.name, *text);
     } else if (const auto* reals = std::get_if<std::vector<double>>(&one.value)) {
-      check(nc_put_att_double(id_, variable, name, NC_DOUBLE, reals->size(), reals->data()),
-            "writing attribute " + one.name);
+      check_variable(nc_put_att_double(id_, variable, name, NC_DOUBLE, reals->size(), reals->data()),
+                     "writing attribute " + one.name, variable);
     } else {
       const auto& whole = std::get<std::vector<std::int64_t>>(one.value);
       const std::vector<long long> values(whole.begin(), whole.end());
       bool fits = true;
       for (const long long v : values) fits = fits && v == static_cast<int>(v);
-      check(nc_put_att_longlong(id_, variable, name, fits ? NC_INT : NC_DOUBLE, values.size(), values.data()),
-            "writing attribute " + one.name);
+      check_variable(nc_put_att_longlong(id_, variable, name, fits ? NC_INT : NC_DOUBLE, values.size(), values.data()),
+                     "writing attribute " + one.name, variable);
     }
   }
 }
 
 void NcFile::end_define() { check(nc_enddef(id_), "writing the header"); }
+
+void NcFile::put(int variable, Extents start, Extents count, const double* values) {
+  check_variable(nc_put_vara_double(id_, variable, start.data(), count.data(), values), "writing", variable);
+}
+
+void NcFile::put(int variable, Extents start, Extents count, const float* values) {
+  check_variable(nc_put_vara_float(id_, variable, start.data(), count.data(), values), "writing", variable);
+}
+
+void NcFile::put(int variable, Extents start, Extents count, const std::int32_t* values) {
+  check_variable(nc_put_vara_int(id_, variable, start.data(), count.data(), values), "writing", variable);
+}
+
+void NcFile::put(int variable, Extents start, Extents count, const std::int16_t* values) {
+  check_variable(nc_put_vara_short(id_, variable, start.data(), count.data(), values), "writing", variable);
+}
+
+void NcFile::put(int variable, Extents start, Extents count, const std::byte* values) {
+  check_variable(nc_put_vara(id_, variable, start.data(), count.data(), values), "writing", variable);
+}
+
+void NcFile::put(int variable, const std::vector<double>& values) {
+  check_variable(nc_put_var_double(id_, variable, values.data()), "writing", variable);
+}
+
+void NcFile::put_texts(int variable, const std::vector<std::string>& texts) {
+  const std::size_t width = text_width(texts);
+  std::string letters;
+  for (const std::string& text : texts) letters.append(text).append(width - text.size(), '\0');
+  check_variable(nc_put_var_text(id_, variable, letters.data()), "writing", variable);
+}
+
+std::size_t text_width(const std::vector<std::string>& texts) {
+  std::size_t width = 1;
+  for (const std::string& text : texts) width = std::max(width, text.size());
+  return width;
+}
 
 const Attribute* find_attribute(const Attributes& attributes, std::string_view name) {
   for (const Attribute& one : attributes)

@@ -1,7 +1,6 @@
 #include "io/result_writer_netcdf.h"
 
 #include <fmt/format.h>
-#include <hdf5.h>
 
 #include <algorithm>
 #include <array>
@@ -21,10 +20,6 @@ namespace {
 
 constexpr std::size_t kChunkSide = 512;  // 1 MiB of float32 a chunk
 constexpr std::size_t kChunkValues = kChunkSide * kChunkSide;
-
-// HDF5 1.10 tidies up when the program ends, and then crashes over a file whose last bytes a full disk refused: the
-// exit code would be the crash's. We close every file ourselves. It must be told before its first use, hence here.
-[[maybe_unused]] const herr_t no_tidying = H5dont_atexit();
 
 template <class T>
 constexpr nc_type netcdf_type() {
@@ -57,9 +52,8 @@ class ResultFile {
     for (const std::size_t map : maps_) variables.push_back(define_map(set_.maps[map]));
     file_.put_attributes(NC_GLOBAL, set_.global);
     file_.end_define();
-    for (const auto& [id, numbers] : pending_)
-      file_.check(nc_put_var_double(file_.id(), id, numbers.data()), "writing coordinates");
-    if (place_.is_sites()) write_names();
+    for (const auto& [id, numbers] : pending_) file_.put(id, numbers);
+    if (place_.is_sites()) file_.put_texts(names_id_, place_.site_names);
     for (std::size_t i = 0; i < maps_.size(); ++i) write_map(variables[i], maps_[i]);
     file_.close();
   }
@@ -123,15 +117,13 @@ class ResultFile {
     const int lat_id = define_coordinate(names[0], cell_dims_, latitude_attributes(), std::move(lats));
     const int lon_id = define_coordinate(names[1], cell_dims_, longitude_attributes(), std::move(lons));
     for (const int id : {lat_id, lon_id})
-      if (!place_.is_sites()) compress(id, "coordinates", cell_chunk());
+      if (!place_.is_sites()) file_.define_storage(id, cell_chunk(), set_.deflate);
     coordinates_.insert(coordinates_.end(), names.begin(), names.end());
   }
 
   void define_sites() {
     cell_dims_ = {file_.define_dimension("station", place_.cells())};
-    name_bytes_ = 1;
-    for (const std::string& name : place_.site_names) name_bytes_ = std::max(name_bytes_, name.size());
-    const int letters = file_.define_dimension("name_strlen", name_bytes_);
+    const int letters = file_.define_dimension("name_strlen", text_width(place_.site_names));
     names_id_ = file_.define_variable("station_id", NC_CHAR, std::array{cell_dims_[0], letters});
     file_.put_attributes(names_id_, {{"long_name", "name of the site"}, {"cf_role", "timeseries_id"}});
     if (place_.lat.empty()) return;
@@ -208,22 +200,16 @@ class ResultFile {
     return chunk;
   }
 
-  void compress(int id, const std::string& name, const std::vector<std::size_t>& chunk) {
-    file_.check(nc_def_var_chunking(file_.id(), id, NC_CHUNKED, chunk.data()), "defining chunks", name);
-    if (set_.deflate > 0) file_.check(nc_def_var_deflate(file_.id(), id, 1, 1, set_.deflate), "defining deflate", name);
-  }
-
   int define_map(const MapSpec& map) {
     return with_stored_type(map.type, [&](auto zero) {
       using T = decltype(zero);
       const int id = file_.define_variable(map.name, netcdf_type<T>(), dims_of(map));
-      compress(id, map.name, chunk_of(map));
-      // Chunks are written whole and once: a cache of one chunk bounds memory and fixes the order in the file.
       const auto chunk = chunk_of(map);
+      file_.define_storage(id, chunk, set_.deflate);
+      // Chunks are written whole and once: a cache of one chunk bounds memory and fixes the order in the file.
       const std::size_t bytes = std::accumulate(chunk.begin(), chunk.end(), sizeof(T), std::multiplies<>());
       file_.check(nc_set_var_chunk_cache(file_.id(), id, bytes, 1, 1.0F), "setting the chunk cache", map.name);
-      const T fill = fill_value<T>();
-      file_.check(nc_def_var_fill(file_.id(), id, NC_FILL, &fill), "defining the fill value", map.name);
+      file_.define_fill(id, static_cast<double>(fill_value<T>()));
       describe_map<T>(id, map);
       return id;
     });
@@ -231,9 +217,7 @@ class ResultFile {
 
   template <class T>
   void describe_map(int id, const MapSpec& map) {
-    const auto text = [&](const char* name, const std::string& value) {
-      if (!value.empty()) file_.put_text(id, name, value);
-    };
+    const auto text = [&](const char* name, const std::string& value) { file_.put_text(id, name, value); };
     const auto numbers = [&](const char* name, const auto& values) {
       if (values.empty()) return;
       std::vector<T> typed;  // CF: flags and ranges have the type of their variable
@@ -268,13 +252,6 @@ class ResultFile {
   }
 
   // ---- values ----
-  void write_names() {
-    std::string letters(place_.cells() * name_bytes_, '\0');
-    for (std::size_t site = 0; site < place_.site_names.size(); ++site)
-      place_.site_names[site].copy(letters.data() + site * name_bytes_, name_bytes_);
-    file_.check(nc_put_var_text(file_.id(), names_id_, letters.data()), "writing", "station_id");
-  }
-
   void write_map(int id, std::size_t map) {
     if (place_.is_sites()) return write_site_map(id, map);
     const MapSpec& spec = set_.maps[map];
@@ -290,7 +267,7 @@ class ResultFile {
             start.insert(start.begin(), layer);
             count.insert(count.begin(), 1);
           }
-          put(id, spec, start, count, buffer);
+          file_.put(id, start, count, buffer.data());
         }
   }
 
@@ -310,13 +287,8 @@ class ResultFile {
         start.push_back(0);
         count.push_back(layers);
       }
-      put(id, spec, start, count, buffer);
+      file_.put(id, start, count, buffer.data());
     }
-  }
-
-  void put(int id, const MapSpec& map, const std::vector<std::size_t>& start, const std::vector<std::size_t>& count,
-           const std::vector<std::byte>& buffer) {
-    file_.check(nc_put_vara(file_.id(), id, start.data(), count.data(), buffer.data()), "writing", map.name);
   }
 
   const MapSet& set_;
@@ -327,7 +299,6 @@ class ResultFile {
   std::set<std::string> taken_;
   std::vector<int> cell_dims_;
   int lag_dim_ = -1, order_dim_ = -1, ends_dim_ = -1, names_id_ = -1;
-  std::size_t name_bytes_ = 1;
   std::vector<std::string> coordinates_;
   std::string mapping_name_;
   std::vector<std::pair<int, std::vector<double>>> pending_;  ///< numbers to write when the header is done

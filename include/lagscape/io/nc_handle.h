@@ -2,6 +2,7 @@
 #include <netcdf.h>
 
 #include <cstddef>
+#include <cstdint>
 #include <optional>
 #include <span>
 #include <string>
@@ -38,10 +39,13 @@ struct NcVariable {
 /// keeps the HDF5 library beneath it silent.
 class NcFile {
  public:
+  using Extents = const std::vector<std::size_t>&;  ///< a number for each dimension
   /// Opens for reading. Classic files that are shorter than their header promises are refused.
   [[nodiscard]] static NcFile open(const std::string& path);
   /// Creates a new file that must not exist; mode: netCDF-4 classic model unless told otherwise.
   [[nodiscard]] static NcFile create(const std::string& path, int mode = NC_NETCDF4 | NC_CLASSIC_MODEL);
+  /// Opens a file made by create() to write more values.
+  [[nodiscard]] static NcFile reopen(const std::string& path);
   NcFile(NcFile&& other) noexcept;
   NcFile& operator=(NcFile&& other) noexcept;
   NcFile(const NcFile&) = delete;
@@ -76,22 +80,43 @@ class NcFile {
   /// "netCDF-4", "netCDF-4 (classic model)", "CDF-1", "CDF-2", "CDF-5".
   [[nodiscard]] std::string kind() const;
 
-  // ---- writing ----
+  // ---- writing; variables by the id that define_variable gave, dimensions too ----
+  /// Length NC_UNLIMITED: grows with what is put.
   int define_dimension(const std::string& name, std::size_t length);
   int define_variable(const std::string& name, nc_type type, std::span<const int> dims);
-  /// Attributes as attribute.h says; integers beyond NC_INT become doubles.
+  /// Chunk lengths, shuffled and deflated at this level (0: neither); no chunks: one contiguous block. NetCDF-4 only.
+  void define_storage(int variable, std::span<const std::size_t> chunks, int deflate);
+  /// The missing value, converted to the variable's type.
+  void define_fill(int variable, double value);
+  /// Attributes as attribute.h says, without empty texts; integers beyond NC_INT become doubles. Variable NC_GLOBAL: of
+  /// the file.
   void put_attributes(int variable, const Attributes& attributes);
+  /// A text attribute; nothing if the text is empty.
   void put_text(int variable, const std::string& name, const std::string& value);
   void end_define();
+  /// A slab of values, converted to the variable's type if theirs is another.
+  void put(int variable, Extents start, Extents count, const double* values);
+  void put(int variable, Extents start, Extents count, const float* values);
+  void put(int variable, Extents start, Extents count, const std::int32_t* values);
+  void put(int variable, Extents start, Extents count, const std::int16_t* values);
+  /// A slab of values that have the variable's type.
+  void put(int variable, Extents start, Extents count, const std::byte* values);
+  /// All values of a variable without unlimited dimension.
+  void put(int variable, const std::vector<double>& values);
+  /// Texts as rows of characters; the last dimension has the length text_width(texts).
+  void put_texts(int variable, const std::vector<std::string>& texts);
 
  private:
   NcFile(int id, std::string path, ErrorKind kind) : id_(id), path_(std::move(path)), kind_(kind) {}
+  void check_variable(int status, std::string_view doing, int variable) const;
 
   int id_ = -1;
   std::string path_;
   ErrorKind kind_ = ErrorKind::input;
 };
 
+/// Bytes of the longest text, at least 1.
+[[nodiscard]] std::size_t text_width(const std::vector<std::string>& texts);
 /// The attribute of this name, or nothing.
 [[nodiscard]] const Attribute* find_attribute(const Attributes& attributes, std::string_view name);
 /// Text of an attribute, trimmed; "" if there is none or it is a number.
