@@ -3,8 +3,8 @@
 #include <string>
 #include <vector>
 
-#include "forge/part_files.h"
 #include "forge/recipe.h"
+#include "lagscape/io/part_file.h"
 
 namespace lagscape {
 

@@ -78,7 +78,8 @@ ForgeReport forge_recipe(const std::string& recipe_path, const std::vector<std::
                          const Log& log) {
   const Recipe recipe = read_recipe(recipe_path, overrides);
   check_memory(recipe);
-  PartFiles files(recipe.output.folder, file_names(recipe), replace);
+  PartFiles files(recipe.output.folder, file_names(recipe), replace,
+                  "choose another folder with --set output.folder=DIR");
   log.note(
       fmt::format("making {} values", grouped(recipe.axis.size() * recipe.geometry.cells() * recipe.variables.size())));
   MissingCounts missing;

@@ -2,8 +2,8 @@
 #include <string>
 #include <vector>
 
-#include "forge/nc_file.h"
 #include "lagscape/grid/geometry.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 
@@ -15,8 +15,8 @@ struct Space {
 };
 
 /// Declares dimensions, coordinate variables and grid mapping by CF-1.10.
-[[nodiscard]] Space define_space(NcWriter& file, const Geometry& geometry);
-/// Writes the coordinates; after end_definition().
-void write_space(NcWriter& file, const Geometry& geometry, const Space& space);
+[[nodiscard]] Space define_space(NcFile& file, const Geometry& geometry);
+/// Writes the coordinates; after end_define().
+void write_space(NcFile& file, const Geometry& geometry, const Space& space);
 
 }  // namespace lagscape

@@ -1,5 +1,3 @@
-#include <netcdf.h>
-
 #include <fmt/format.h>
 
 #include <algorithm>
@@ -8,10 +6,10 @@
 #include <limits>
 
 #include "forge/data_files.h"
-#include "forge/nc_file.h"
 #include "forge/space.h"
 #include "lagscape/base/text.h"
 #include "lagscape/base/units.h"
+#include "lagscape/io/nc_handle.h"
 
 namespace lagscape {
 namespace {
@@ -65,7 +63,7 @@ class TruthFile {
   TruthFile(const Recipe& recipe, std::size_t variable, const std::string& path)
       : recipe_(recipe),
         variable_(recipe.variables[variable]),
-        file_(NcWriter::create(path, FileFormat::netcdf4)),
+        file_(NcFile::create(path)),
         space_(define_space(file_, recipe.geometry)) {}
 
   void write(const std::vector<std::size_t>& missing) {
@@ -76,11 +74,11 @@ class TruthFile {
     const int patch = define_patch();
     const std::size_t orders = highest_order(variable_);
     if (orders > 0) define_coefficients(orders);
-    file_.attributes(
-        -1, provenance(recipe_,
-                       fmt::format("What is true of '{}', cell by cell, of data made by a recipe.", variable_.name)));
-    file_.attributes(-1, {{"recipe", recipe_.text}});
-    file_.end_definition();
+    file_.put_attributes(
+        NC_GLOBAL, provenance(recipe_, fmt::format("What is true of '{}', cell by cell, of data made by a recipe.",
+                                                   variable_.name)));
+    file_.put_attributes(NC_GLOBAL, {{"recipe", recipe_.text}});
+    file_.end_define();
     write_space(file_, recipe_.geometry, space_);
     for (std::size_t i = 0; i < maps.size(); ++i) put(ids[i], by_cell(variable_, maps[i].value));
     std::vector<double> shares;
@@ -96,31 +94,31 @@ class TruthFile {
   int define(const std::string& name, const std::string& long_name, const std::string& units,
              std::vector<int> dimensions) {
     dimensions.insert(dimensions.end(), space_.dimensions.begin(), space_.dimensions.end());
-    const int id = file_.variable(name, NC_DOUBLE, dimensions);
-    file_.fill(id, kNaN);
-    file_.attributes(id, {{"long_name", long_name}, {"units", units}});
-    file_.attributes(id, space_.attributes);
+    const int id = file_.define_variable(name, NC_DOUBLE, dimensions);
+    file_.define_fill(id, kNaN);
+    file_.put_attributes(id, {{"long_name", long_name}, {"units", units}});
+    file_.put_attributes(id, space_.attributes);
     return id;
   }
   int define_patch() {
-    const int id = file_.variable("patch", NC_INT, space_.dimensions);
+    const int id = file_.define_variable("patch", NC_INT, space_.dimensions);
     std::string names;
     std::vector<std::int64_t> values;
     for (const Patch& patch : variable_.patches) {
       values.push_back(std::ssize(values));
       names += (names.empty() ? "" : " ") + patch.name;
     }
-    file_.fill(id, kLake);
-    file_.attributes(
+    file_.define_fill(id, kLake);
+    file_.put_attributes(
         id,
         {{"long_name", "patch of the recipe; missing in lakes"}, {"flag_values", values}, {"flag_meanings", names}});
-    file_.attributes(id, space_.attributes);
+    file_.put_attributes(id, space_.attributes);
     return id;
   }
   void define_coefficients(std::size_t orders) {
-    const int order = file_.dimension("order", orders);
-    order_ = file_.variable("order", NC_DOUBLE, {order});
-    file_.attributes(order_, {{"long_name", "number of the coefficient"}, {"units", "1"}});
+    const int order = file_.define_dimension("order", orders);
+    order_ = file_.define_variable("order", NC_DOUBLE, std::array{order});
+    file_.put_attributes(order_, {{"long_name", "number of the coefficient"}, {"units", "1"}});
     coefficients_ = define("ar_coefficients",
                            "autoregressive coefficients; 0 beyond the order, missing with long memory", "1", {order});
   }
@@ -149,7 +147,7 @@ class TruthFile {
 
   const Recipe& recipe_;
   const ForgedVariable& variable_;
-  NcWriter file_;
+  NcFile file_;
   Space space_;
   int order_ = -1, coefficients_ = -1;
 };

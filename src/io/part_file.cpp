@@ -9,6 +9,7 @@
 #include <utility>
 
 #include "lagscape/base/error.h"
+#include "lagscape/base/text.h"
 
 namespace lagscape {
 namespace {
@@ -19,64 +20,84 @@ void sync_path(const std::string& path, int flags) {
   const int error = errno;
   if (file >= 0) close(file);
   if (!done)
-    throw Error(ErrorKind::output, fmt::format("the disk did not take the result: {}", std::strerror(error)),
-                "file: " + path, "check the disk's state and room, then run the job again");
+    throw Error(ErrorKind::output, fmt::format("the disk did not take the file: {}", std::strerror(error)),
+                "file: " + path, "check the disk's state and room, then run the command again");
 }
 
 }  // namespace
 
-ResultFolder::ResultFolder(const std::filesystem::path& path) : path_(path.empty() ? "." : path) {
-  std::error_code error;
-  for (std::filesystem::path one = path_; !one.empty() && !std::filesystem::exists(one, error); one = one.parent_path())
-    made_.insert(made_.begin(), one);
-  std::filesystem::create_directories(path_, error);
-  if (!error && std::filesystem::is_directory(path_)) return;
-  throw Error(ErrorKind::output,
-              fmt::format("the result's folder cannot be made: {}", error ? error.message() : "the name is a file's"),
-              "folder: " + path_.string(), "name a folder in output.file that you may write to");
+PartFiles::PartFiles(const std::filesystem::path& folder, std::vector<std::string> names, bool replace,
+                     std::string remedy)
+    : folder_(folder.empty() ? "." : folder), names_(std::move(names)), replace_(replace), remedy_(std::move(remedy)) {
+  refuse_taken_names();
+  make_folder();
+  discard();  // of a killed process that had our number
 }
 
-ResultFolder::~ResultFolder() {
+PartFiles::~PartFiles() {
+  if (committed_) return;
+  discard();
   std::error_code ignored;
   for (; !made_.empty(); made_.pop_back()) std::filesystem::remove(made_.back(), ignored);  // only if empty
 }
 
-void ResultFolder::sync() const { sync_path(path_.string(), O_RDONLY | O_DIRECTORY); }
-
-PartFile::PartFile(std::filesystem::path final_path)
-    : final_(std::move(final_path)),
-      part_(final_.parent_path() / fmt::format(".{}.{}.part", final_.filename().string(), getpid())) {
+void PartFiles::discard() const {
   std::error_code ignored;
-  std::filesystem::remove(part_, ignored);  // of a killed process that had our number
+  for (const std::string& name : names_) std::filesystem::remove(part(name), ignored);
 }
 
-PartFile::~PartFile() {
-  std::error_code ignored;
-  if (!part_.empty()) std::filesystem::remove(part_, ignored);
+std::string PartFiles::part(const std::string& name) const {
+  return path_of(fmt::format(".{}.{}.part", name, getpid()));
 }
 
-void PartFile::sync() const { sync_path(part_.string(), O_RDONLY); }
-
-void PartFile::publish() {
+void PartFiles::make_folder() {
   std::error_code error;
-  std::filesystem::rename(part_, final_, error);
-  if (error)
-    throw Error(ErrorKind::output, fmt::format("the finished result cannot be given its name: {}", error.message()),
-                "file: " + final_.string(), "check who may write to the folder, then run the job again");
-  part_.clear();
+  for (std::filesystem::path one = folder_; !one.empty() && !std::filesystem::exists(one, error);
+       one = one.parent_path())
+    made_.insert(made_.begin(), one);
+  std::filesystem::create_directories(folder_, error);
+  if (!error && std::filesystem::is_directory(folder_)) return;
+  throw Error(ErrorKind::output,
+              fmt::format("the folder cannot be made: {}", error ? error.message() : "the name is a file's"),
+              "folder: " + folder_.string(), remedy_ + ", where you may write");
 }
 
-void refuse_taken_names(const std::vector<std::string>& paths, bool replace) {
-  for (const std::string& path : paths) {
+void PartFiles::refuse_taken_names() const {
+  std::vector<std::string> taken;
+  for (const std::string& name : names_) {
     std::error_code ignored;
-    const auto status = std::filesystem::symlink_status(path, ignored);
-    if (!std::filesystem::exists(status)) continue;
-    if (std::filesystem::is_directory(path, ignored))
-      throw Error(ErrorKind::output, "the result's name is that of a folder", "file: " + path,
-                  "name a file in output.file");
-    if (!replace)
-      throw Error(ErrorKind::output, "the result exists already", "file: " + path,
-                  "name another file in output.file, or allow it to be replaced with --replace");
+    if (!std::filesystem::exists(std::filesystem::symlink_status(path_of(name), ignored))) continue;
+    if (std::filesystem::is_directory(path_of(name), ignored))
+      throw Error(ErrorKind::output, "the file's name is that of a folder", "file: " + path_of(name), remedy_);
+    taken.push_back(name);
+  }
+  if (taken.empty() || replace_) return;
+  const bool one = taken.size() == 1;
+  throw Error(ErrorKind::output, one ? "the file exists already" : "these files exist already: " + join(taken, ", "),
+              one ? "file: " + path_of(taken.front()) : "folder: " + folder_.string(),
+              fmt::format("{}, or allow {} to be replaced with --replace", remedy_, one ? "it" : "them"));
+}
+
+std::vector<std::string> PartFiles::commit() {
+  for (const std::string& name : names_) sync_path(part(name), O_RDONLY);
+  refuse_taken_names();
+  publish();
+  committed_ = true;
+  sync_path(folder_.string(), O_RDONLY | O_DIRECTORY);  // makes the names survive a power cut
+  std::vector<std::string> paths;
+  for (const std::string& name : names_) paths.push_back(path_of(name));
+  return paths;
+}
+
+void PartFiles::publish() const {
+  for (auto name = names_.rbegin(); name != names_.rend(); ++name) {
+    std::error_code error, ignored;
+    std::filesystem::rename(part(*name), path_of(*name), error);
+    if (!error) continue;
+    for (auto done = names_.rbegin(); done != name && !replace_; ++done)
+      std::filesystem::remove(path_of(*done), ignored);
+    throw Error(ErrorKind::output, fmt::format("the finished file cannot be given its name: {}", error.message()),
+                "file: " + path_of(*name), "check who may write to the folder, then run the command again");
   }
 }
 

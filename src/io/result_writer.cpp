@@ -16,30 +16,26 @@
 namespace lagscape {
 namespace {
 
-std::string companion(const std::string& path, const std::string& ending) {
-  const std::filesystem::path name(path);
-  return (name.parent_path() / (name.stem().string() + ending)).string();
-}
-
 // What one file of a result holds.
 struct Member {
   enum class Kind { netcdf, csv } kind;
-  std::string path;
+  std::string name;  ///< in the result's folder
   std::vector<std::size_t> maps;
 };
 
 // Sites: GIS sees points only in a file whose variables all run over the sites alone, so cubes go into a file of their
 // own.
-std::vector<Member> members_of(const std::string& path, const MapSet& set) {
+std::vector<Member> members_of(const std::filesystem::path& path, const MapSet& set) {
+  const std::string name = path.filename().string(), stem = path.stem().string();
   std::vector<std::size_t> all, flat, cubes;
   for (std::size_t map = 0; map < set.maps.size(); ++map) {
     all.push_back(map);
     (set.maps[map].axis == LayerAxis::none ? flat : cubes).push_back(map);
   }
-  if (!set.geometry.is_sites()) return {{Member::Kind::netcdf, path, all}};
-  std::vector<Member> members{{Member::Kind::netcdf, path, flat}};
-  if (!cubes.empty()) members.push_back({Member::Kind::netcdf, companion(path, "_cubes.nc"), cubes});
-  members.push_back({Member::Kind::csv, companion(path, ".csv"), flat});
+  if (!set.geometry.is_sites()) return {{Member::Kind::netcdf, name, all}};
+  std::vector<Member> members{{Member::Kind::netcdf, name, flat}};
+  if (!cubes.empty()) members.push_back({Member::Kind::netcdf, stem + "_cubes.nc", cubes});
+  members.push_back({Member::Kind::csv, stem + ".csv", flat});
   return members;
 }
 
@@ -67,14 +63,20 @@ MapSet with_clean_axes(MapSet set) {
   return set;
 }
 
+std::vector<std::string> names_of(const std::vector<Member>& members) {
+  std::vector<std::string> names;
+  for (const Member& member : members) names.push_back(member.name);
+  return names;
+}
+
 class Result final : public MapSink {
  public:
   Result(const std::string& path, const MapSet& set, bool replace)
       : set_(with_clean_axes(set)),
-        replace_(replace),
         members_(members_of(path, set)),
-        folder_(std::filesystem::path(path).parent_path()),
-        values_(folder_.path(), set_) {}
+        files_(std::filesystem::path(path).parent_path(), names_of(members_), replace,
+               "name another file in output.file"),
+        values_(files_.folder(), set_) {}
 
   void write(std::size_t map, CellRange cells, std::span<const float> values) override { put(map, cells, values); }
   void write(std::size_t map, CellRange cells, std::span<const double> values) override { put(map, cells, values); }
@@ -94,19 +96,15 @@ class Result final : public MapSink {
   void commit() override {
     require_open();
     values_.require_complete();
-    std::vector<std::string> names;
-    for (const Member& member : members_) names.push_back(member.path);
-    refuse_taken_names(names, replace_);  // before the long work of assembling ...
-    std::vector<std::unique_ptr<PartFile>> parts;
-    for (const Member& member : members_) {
-      parts.push_back(std::make_unique<PartFile>(member.path));
-      assemble(member, *parts.back());
+    files_.refuse_taken_names();  // before the long work of assembling; commit() asks again
+    try {
+      for (const Member& member : members_) assemble(member, files_.part(member.name));
+      files_.commit();
+    } catch (...) {
+      files_.discard();
+      throw;
     }
-    refuse_taken_names(names, replace_);  // ... and after it
-    publish(parts);
-    folder_.keep();
     committed_ = true;
-    folder_.sync();
   }
 
  private:
@@ -118,55 +116,35 @@ class Result final : public MapSink {
 
   void require_open() const {
     if (committed_)
-      throw Error(ErrorKind::internal, "the result is finished already", "file: " + members_.front().path);
+      throw Error(ErrorKind::internal, "the result is finished already", "file: " + members_.front().name);
   }
 
-  void assemble(const Member& member, const PartFile& part) const {
-    if (member.kind == Member::Kind::csv) {
-      write_result_csv(part.path(), set_, member.maps, values_);
-    } else {
-      write_result_netcdf(part.path(), set_, member.maps, values_);
-      check_result_netcdf(part.path(), set_, member.maps, values_);
-    }
-    part.sync();
-  }
-
-  // The main file comes last: where it is, its companions are. What cannot be finished is taken back.
-  void publish(std::vector<std::unique_ptr<PartFile>>& parts) const {
-    std::vector<std::string> published;
-    try {
-      for (auto part = parts.rbegin(); part != parts.rend(); ++part) {
-        (*part)->publish();
-        published.push_back((*part)->final_path());
-      }
-    } catch (const Error&) {
-      std::error_code ignored;
-      if (!replace_)
-        for (const std::string& path : published) std::filesystem::remove(path, ignored);
-      throw;
-    }
+  void assemble(const Member& member, const std::string& part) const {
+    if (member.kind == Member::Kind::csv) return write_result_csv(part, set_, member.maps, values_);
+    write_result_netcdf(part, set_, member.maps, values_);
+    check_result_netcdf(part, set_, member.maps, values_);
   }
 
   MapSet set_;
-  bool replace_, committed_ = false;
+  bool committed_ = false;
   std::vector<Member> members_;
-  ResultFolder folder_;
+  PartFiles files_;
   ValueSpool values_;
 };
 
 }  // namespace
 
 std::vector<std::string> result_files(const std::string& path, const MapSet& set) {
-  std::vector<std::string> names;
-  for (const Member& member : members_of(path, set)) names.push_back(member.path);
-  return names;
+  std::vector<std::string> paths;
+  for (const Member& member : members_of(path, set))
+    paths.push_back((std::filesystem::path(path).parent_path() / member.name).string());
+  return paths;
 }
 
 std::unique_ptr<MapSink> create_result(const std::string& path, const MapSet& set, bool replace) {
   if (std::filesystem::path(path).filename().empty())
     throw Error(ErrorKind::output, "the result has no file name", "file: " + path, "name a file in output.file");
   require_sound(set);
-  refuse_taken_names(result_files(path, set), replace);
   return std::make_unique<Result>(path, set, replace);
 }
 

@@ -5,8 +5,8 @@ from tree import ROOT, files, finish, relative
 
 INCLUDE = re.compile(r'^\s*#\s*include\s*["<]([^">]+)[">]')
 # Libraries that one layer alone may know, so that they can be exchanged in one place.
-KEPT_TO = {"netcdf": {"io", "forge"}, "ncFile.h": {"io", "forge"}, "ncVar.h": {"io", "forge"}, "hdf5": {"io"},
-           "udunits2.h": {"io"}, "toml++/": {"job"}, "CLI/": {"cli"}, "omp.h": {"pipeline"}}
+KEPT_TO = {"netcdf": {"io"}, "ncFile.h": {"io"}, "ncVar.h": {"io"}, "hdf5": {"io"}, "udunits2.h": {"io"},
+           "toml++/": {"job"}, "CLI/": {"cli"}, "omp.h": {"pipeline"}}
 
 
 def declared():

@@ -5,44 +5,38 @@
 
 namespace lagscape {
 
-/// The folder of a result, made if it is missing; folders made here are taken away again unless kept.
-class ResultFolder {
+/// Files of one folder that get their names when all of them are complete. Until then each is written under a hidden
+/// name beside its own (".NAME.PROCESS.part"); what is not committed is removed, with the folders made for it.
+class PartFiles {
  public:
-  explicit ResultFolder(const std::filesystem::path& path);
-  ResultFolder(const ResultFolder&) = delete;
-  ResultFolder& operator=(const ResultFolder&) = delete;
-  ~ResultFolder();
+  /// Makes the folder if it is missing. `remedy` tells how the user chooses another place: "name another file in
+  /// output.file". Throws Error{output} where a name is taken or the folder cannot be made.
+  PartFiles(const std::filesystem::path& folder, std::vector<std::string> names, bool replace, std::string remedy);
+  PartFiles(const PartFiles&) = delete;
+  PartFiles& operator=(const PartFiles&) = delete;
+  ~PartFiles();
 
-  [[nodiscard]] const std::filesystem::path& path() const { return path_; }
-  void keep() { made_.clear(); }
-  /// Makes names given in it so far survive a power cut.
-  void sync() const;
+  [[nodiscard]] const std::filesystem::path& folder() const { return folder_; }
+  /// Where to write the file of this name.
+  [[nodiscard]] std::string part(const std::string& name) const;
+  /// Throws Error{output} if a name is taken: by a folder in any case, by a file unless it may be replaced.
+  void refuse_taken_names() const;
+  /// Waits until the disk has every file, then names them, the first one last: where it is, the others are. Returns
+  /// their paths. What cannot be finished is taken back. Throws Error{output}.
+  std::vector<std::string> commit();
+  /// Removes what was written; it may then be written again.
+  void discard() const;
 
  private:
-  std::filesystem::path path_;
-  std::vector<std::filesystem::path> made_;  ///< outermost first
+  [[nodiscard]] std::string path_of(const std::string& name) const { return (folder_ / name).string(); }
+  void make_folder();
+  void publish() const;
+
+  std::filesystem::path folder_;
+  std::vector<std::string> names_;
+  bool replace_, committed_ = false;
+  std::string remedy_;
+  std::vector<std::filesystem::path> made_;  ///< folders made here, outermost first
 };
-
-/// A file under a hidden name beside its final one (".NAME.PROCESS.part"), removed unless published.
-class PartFile {
- public:
-  explicit PartFile(std::filesystem::path final_path);
-  PartFile(const PartFile&) = delete;
-  PartFile& operator=(const PartFile&) = delete;
-  ~PartFile();
-
-  [[nodiscard]] std::string path() const { return part_.string(); }
-  [[nodiscard]] std::string final_path() const { return final_.string(); }
-  /// Waits until the disk has the file's content.
-  void sync() const;
-  /// Gives the file its final name, in place of what has it now.
-  void publish();
-
- private:
-  std::filesystem::path final_, part_;
-};
-
-/// Throws Error{output} if one of these names is taken (by a folder in any case, by a file unless `replace`).
-void refuse_taken_names(const std::vector<std::string>& paths, bool replace);
 
 }  // namespace lagscape
