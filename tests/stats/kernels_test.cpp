@@ -365,11 +365,11 @@ TEST_P(EachKernelTable, BurgOnACompleteRecordIsTheTextbookRecursion) {
   for (std::size_t p = 0; p < 12; ++p) EXPECT_TRUE(close(found.partial[p * kLanes], partials[p], 1e-11, kRounding));
 }
 
-TEST_P(EachKernelTable, BurgOfFewerValuesThanOrdersStaysFinite) {
+TEST_P(EachKernelTable, BurgOfAsManyOrdersAsStepsStaysFinite) {
   std::vector<Series> lanes(kLanes, Series{1, -2, 3, kNaN, 0.5});
-  const BurgResult found = run_burg(kernels, Centred(lanes), 8);
+  const BurgResult found = run_burg(kernels, Centred(lanes), 5);
   for (const double k : found.partial) EXPECT_TRUE(std::abs(k) <= 1) << k;
-  EXPECT_EQ(found.usable[7 * kLanes], 0);
+  EXPECT_EQ(found.usable[4 * kLanes], 0);
 }
 
 TEST_P(EachKernelTable, DurbinLevinsonSolvesTheYuleWalkerEquations) {

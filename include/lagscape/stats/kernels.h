@@ -62,7 +62,8 @@ struct KernelTable {
   /// Time is cut into blocks of 504 rows whatever the lags asked for, so a lag's sum has one order of additions.
   void (*lag_products)(const double* d, std::size_t steps, std::size_t first, std::size_t count, double* sums) noexcept;
   /// Burg's recursion over gap-free stretches (all of x[t-p] .. x[t] valid); `work`: 2 * steps rows; `window`: steps
-  /// bytes. partial, usable: `orders` lane arrays each; a lane without variance left gives 0.
+  /// bytes. partial, usable: `orders` (<= steps) lane arrays each; a lane without variance left
+  /// gives 0.
   void (*burg)(const double* d, const std::uint8_t* bits, std::size_t steps, std::size_t orders, double* work,
                std::uint8_t* window, double* partial, double* usable) noexcept;
   /// Partial autocorrelations 1 .. lags from autocorrelations r[1] .. r[lags] (r[0] = 1 is not read), Durbin-Levinson;
