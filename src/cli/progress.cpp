@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <cmath>
 #include <cstdio>
 
 #include "lagscape/base/text.h"
@@ -13,7 +14,7 @@ std::string progress_words(std::size_t done, std::size_t total, double seconds) 
   std::string text = fmt::format("{} of {} cells", grouped(done), grouped(total));
   if (done == 0 || seconds <= 0) return text;
   const double rate = static_cast<double>(done) / seconds;
-  text += fmt::format(", {} cells/s", grouped(static_cast<std::size_t>(rate + 0.5)));
+  text += fmt::format(", {} cells/s", grouped(static_cast<std::size_t>(std::llround(rate))));
   if (done < total) text += fmt::format(", {} left", duration_words(static_cast<double>(total - done) / rate));
   return text;
 }

@@ -202,8 +202,8 @@ Seconds add_months(Calendar calendar, Seconds time, std::int64_t months, int day
 
 std::string iso_text(Calendar calendar, Seconds time) {
   const auto [date, clock] = moment_of(calendar, time);
-  const std::string text = date.year < 0 ? fmt::format("-{:04}-{:02}-{:02}", -date.year, date.month, date.day)
-                                         : fmt::format("{:04}-{:02}-{:02}", date.year, date.month, date.day);
+  std::string text = date.year < 0 ? fmt::format("-{:04}-{:02}-{:02}", -date.year, date.month, date.day)
+                                   : fmt::format("{:04}-{:02}-{:02}", date.year, date.month, date.day);
   if (clock == 0) return text;
   return text + fmt::format("T{:02}:{:02}:{:02}", clock / 3600, clock / 60 % 60, clock % 60);
 }

@@ -40,7 +40,7 @@ std::string Geometry::describe_cell(std::size_t cell) const {
   if (is_sites())
     return cell < site_names.size() ? fmt::format("site '{}'", site_names[cell]) : fmt::format("site {}", cell);
   const std::size_t row = cell / cols, col = cell % cols;
-  const std::string place = fmt::format("row {}, col {}", row, col);
+  std::string place = fmt::format("row {}, col {}", row, col);
   if (kind == GeometryKind::latlon) return fmt::format("{} ({})", place, degrees(y.values[row], x.values[col]));
   if (kind == GeometryKind::projected)
     return fmt::format("{} ({}, {})", place, coordinate(y, "y", y.values[row]), coordinate(x, "x", x.values[col]));

@@ -347,7 +347,7 @@ std::optional<std::vector<double>> TomlReader::numbers(const std::string& key) {
 }
 
 std::optional<std::string> TomlReader::choice(const std::string& key, const std::vector<std::string>& allowed) {
-  const auto value = text(key);
+  auto value = text(key);
   if (!value || std::find(allowed.begin(), allowed.end(), *value) != allowed.end()) return value;
   problem(key, fmt::format("{}: found \"{}\", expected {}{}", last_part(key), *value, join(allowed, " | "),
                            did_you_mean(*value, allowed)));

@@ -2,6 +2,8 @@
 
 #include <fmt/format.h>
 
+#include <cmath>
+
 #include "lagscape/base/text.h"
 
 namespace lagscape {
@@ -52,7 +54,7 @@ std::string shell_word(const std::string& word) {
 
 std::string duration_words(double seconds) {
   if (seconds < 9.95) return fmt::format("{:.1f} s", seconds);
-  const auto whole = static_cast<long long>(seconds + 0.5);
+  const auto whole = std::llround(seconds);
   if (whole < 60) return fmt::format("{} s", whole);
   if (whole < 3600) return fmt::format("{} min {} s", whole / 60, whole % 60);
   return fmt::format("{} h {} min", whole / 3600, whole % 3600 / 60);

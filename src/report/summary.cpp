@@ -1,6 +1,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 #include <filesystem>
 
 #include "lagscape/base/text.h"
@@ -70,7 +71,7 @@ std::string spread_line(std::string_view label, std::string_view unit, const Spr
 
 /// The median decorrelation time as "4.32 months (0.36 years)".
 std::string time_in_two_units(const RunReport& report) {
-  const std::string years = fmt::format("{} years", figure(report.decorrelation_years_median));
+  std::string years = fmt::format("{} years", figure(report.decorrelation_years_median));
   if (report.lag_unit == "year") return years;
   return fmt::format("{} {}s ({})", figure(report.decorrelation_time.median), report.lag_unit, years);
 }
@@ -267,7 +268,7 @@ std::string summary_text(const RunReport& report) {
   const double rate = report.wall_seconds > 0 ? static_cast<double>(report.plan.cells) / report.wall_seconds : 0;
   out += fmt::format("\nlagscape {}: {} in {}, {} {}s/s, {} of memory\n", LAGSCAPE_VERSION,
                      counted(report.plan.cells, place_noun(report.plan.panel)), duration_words(report.wall_seconds),
-                     grouped(static_cast<std::size_t>(rate + 0.5)), place_noun(report.plan.panel),
+                     grouped(static_cast<std::size_t>(std::llround(rate))), place_noun(report.plan.panel),
                      human_bytes(static_cast<double>(report.peak_rss_bytes)));
   return out;
 }

@@ -17,7 +17,7 @@ std::string_view place_noun(const Panel& panel) { return panel.geometry.is_sites
 
 std::string figure(double value) {
   if (!(std::abs(value) >= 999.5) || std::abs(value) >= 1e15) return human_number(value, 3);
-  return (value < 0 ? "-" : "") + grouped(static_cast<std::size_t>(std::abs(value) + 0.5));
+  return (value < 0 ? "-" : "") + grouped(static_cast<std::size_t>(std::llround(std::abs(value))));
 }
 
 std::string percent(std::size_t part, std::size_t whole) {
