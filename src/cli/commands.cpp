@@ -8,11 +8,13 @@
 #include <cstdio>
 #include <filesystem>
 #include <fstream>
+#include <memory>
 
 #include "cli/progress.h"
 #include "lagscape/base/error.h"
 #include "lagscape/base/text.h"
 #include "lagscape/forge/forge.h"
+#include "lagscape/io/part_file.h"
 #include "lagscape/io/survey.h"
 #include "lagscape/job/job_file.h"
 #include "lagscape/pipeline/run.h"
@@ -108,35 +110,25 @@ RunOptions run_options(const CommandLine& line, const std::string& job) {
   return options;
 }
 
-void refuse_existing(const std::string& job, bool replace) {
-  std::error_code ignored;
-  if (!replace && fs::exists(job, ignored)) {
-    throw Error(ErrorKind::output, "this job file exists already", job,
-                "give another name, or --replace to overwrite it");
-  }
-}
-
-/// Written beside and renamed: a job file under its name is always complete.
-void write_job(const std::string& path, const std::string& text) {
-  const std::string part = path + ".part";
-  std::error_code problem;
-  std::ofstream file(part, std::ios::binary);
-  file << text;
-  file.close();
-  if (file) fs::rename(part, path, problem);
-  if (!file || problem) {
-    std::error_code ignored;
-    fs::remove(part, ignored);
-    throw Error(ErrorKind::output, "the job file could not be written", path,
-                "check that its folder exists and may be written to");
-  }
+/// A job file under its name is always complete, and its name is refused before the work.
+std::unique_ptr<PartFiles> starter_file(const fs::path& path, bool replace) {
+  if (path.empty()) return nullptr;
+  return std::make_unique<PartFiles>(path.parent_path(), std::vector{path.filename().string()}, replace,
+                                     "give another name with --write-job");
 }
 
 void survey(const CommandLine& line) {
   ProgressLine none(false);
-  if (!line.write_job.empty()) refuse_existing(line.write_job, line.replace);
+  const fs::path job = line.write_job;
+  const auto starter = starter_file(job, line.replace);
   const SurveyReport report = survey_files(line.arguments, line.sites, log_to_stderr(line.quiet, none));
-  if (!line.write_job.empty()) write_job(line.write_job, starter_job(report, line.write_job, line.sites));
+  if (starter) {
+    const std::string part = starter->part(job.filename().string());
+    std::ofstream file(part, std::ios::binary);
+    file << starter_job(report, line.write_job, line.sites);
+    close_text(file, part);
+    starter->commit();
+  }
   print(line.json ? survey_json(report) : survey_text(report, line.sites, line.write_job));
 }
 

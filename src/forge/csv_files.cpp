@@ -5,18 +5,9 @@
 
 #include "forge/data_files.h"
 #include "forge/generator.h"
-#include "lagscape/base/error.h"
 
 namespace lagscape {
 namespace {
-
-void close(std::ofstream& file, const std::string& path) {
-  file.close();
-  if (!file) {
-    throw Error(ErrorKind::output, "the file could not be written", "file: " + path,
-                "check that the disk has room and the folder may be written to");
-  }
-}
 
 void write_sites(const Geometry& geometry, const std::string& path) {
   std::ofstream file(path, std::ios::binary);
@@ -25,7 +16,7 @@ void write_sites(const Geometry& geometry, const std::string& path) {
     file << fmt::format("{},{},{}", geometry.site_names[i], geometry.lon[i], geometry.lat[i]);
     file << (geometry.altitude.empty() ? "\n" : fmt::format(",{}\n", geometry.altitude[i]));
   }
-  close(file, path);
+  close_text(file, path);
 }
 
 }  // namespace
@@ -50,7 +41,7 @@ MissingCounts write_csv(const Recipe& recipe, const PartFiles& files) {
       }
       file << '\n';
     }
-    close(file, path);
+    close_text(file, path);
   }
   write_sites(geometry, files.part(recipe.output.sites_file));
   return {generator.missing()};

@@ -28,7 +28,7 @@ void sync_path(const std::string& path, int flags) {
 
 PartFiles::PartFiles(const std::filesystem::path& folder, std::vector<std::string> names, bool replace,
                      std::string remedy)
-    : folder_(folder.empty() ? "." : folder), names_(std::move(names)), replace_(replace), remedy_(std::move(remedy)) {
+    : folder_(folder), names_(std::move(names)), replace_(replace), remedy_(std::move(remedy)) {
   refuse_taken_names();
   make_folder();
   discard();  // of a killed process that had our number
@@ -55,8 +55,8 @@ void PartFiles::make_folder() {
   for (std::filesystem::path one = folder_; !one.empty() && !std::filesystem::exists(one, error);
        one = one.parent_path())
     made_.insert(made_.begin(), one);
-  std::filesystem::create_directories(folder_, error);
-  if (!error && std::filesystem::is_directory(folder_)) return;
+  std::filesystem::create_directories(folder(), error);
+  if (!error && std::filesystem::is_directory(folder())) return;
   throw Error(ErrorKind::output,
               fmt::format("the folder cannot be made: {}", error ? error.message() : "the name is a file's"),
               "folder: " + folder_.string(), remedy_ + ", where you may write");
@@ -74,7 +74,7 @@ void PartFiles::refuse_taken_names() const {
   if (taken.empty() || replace_) return;
   const bool one = taken.size() == 1;
   throw Error(ErrorKind::output, one ? "the file exists already" : "these files exist already: " + join(taken, ", "),
-              one ? "file: " + path_of(taken.front()) : "folder: " + folder_.string(),
+              one ? "file: " + path_of(taken.front()) : "folder: " + folder().string(),
               fmt::format("{}, or allow {} to be replaced with --replace", remedy_, one ? "it" : "them"));
 }
 
@@ -83,7 +83,7 @@ std::vector<std::string> PartFiles::commit() {
   refuse_taken_names();
   publish();
   committed_ = true;
-  sync_path(folder_.string(), O_RDONLY | O_DIRECTORY);  // makes the names survive a power cut
+  sync_path(folder().string(), O_RDONLY | O_DIRECTORY);  // makes the names survive a power cut
   std::vector<std::string> paths;
   for (const std::string& name : names_) paths.push_back(path_of(name));
   return paths;
@@ -99,6 +99,13 @@ void PartFiles::publish() const {
     throw Error(ErrorKind::output, fmt::format("the finished file cannot be given its name: {}", error.message()),
                 "file: " + path_of(*name), "check who may write to the folder, then run the command again");
   }
+}
+
+void close_text(std::ofstream& file, const std::string& path) {
+  file.close();
+  if (!file)
+    throw Error(ErrorKind::output, fmt::format("the file could not be written: {}", std::strerror(errno)),
+                "file: " + path, "check that the disk has room and can be written to");
 }
 
 }  // namespace lagscape

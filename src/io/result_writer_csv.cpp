@@ -2,13 +2,11 @@
 
 #include <fmt/format.h>
 
-#include <cerrno>
 #include <cmath>
-#include <cstring>
 #include <fstream>
 #include <vector>
 
-#include "lagscape/base/error.h"
+#include "lagscape/io/part_file.h"
 
 namespace lagscape {
 namespace {
@@ -76,10 +74,7 @@ void write_result_csv(const std::string& path, const MapSet& set, std::span<cons
     for (const auto& texts : columns) out << ',' << texts[site];
     out << "\r\n";
   }
-  out.close();
-  if (!out)
-    throw Error(ErrorKind::output, fmt::format("writing the table failed: {}", std::strerror(errno)), "file: " + path,
-                "check that the disk has room and can be written to");
+  close_text(out, path);
 }
 
 }  // namespace lagscape

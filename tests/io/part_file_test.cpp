@@ -81,6 +81,13 @@ TEST(PartFiles, ANameTakenMeanwhileIsNotOverwritten) {
   EXPECT_EQ(content(folder / "a.nc"), "theirs");
 }
 
+TEST(CloseText, TellsThatADiskTookLessThanWasWritten) {
+  std::ofstream full("/dev/full");
+  full << "wetness\n";
+  const std::string message = message_of([&] { close_text(full, "table.csv"); }, ErrorKind::output);
+  EXPECT_TRUE(has(message, "table.csv") && has(message, "No space left")) << message;
+}
+
 TEST(PartFiles, AFolderThatCannotBeMadeIsTold) {
   const Folder folder;
   fill(folder / "file", "");

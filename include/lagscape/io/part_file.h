@@ -1,5 +1,6 @@
 #pragma once
 #include <filesystem>
+#include <fstream>
 #include <string>
 #include <vector>
 
@@ -16,7 +17,7 @@ class PartFiles {
   PartFiles& operator=(const PartFiles&) = delete;
   ~PartFiles();
 
-  [[nodiscard]] const std::filesystem::path& folder() const { return folder_; }
+  [[nodiscard]] std::filesystem::path folder() const { return folder_.empty() ? "." : folder_; }
   /// Where to write the file of this name.
   [[nodiscard]] std::string part(const std::string& name) const;
   /// Throws Error{output} if a name is taken: by a folder in any case, by a file unless it may be replaced.
@@ -38,5 +39,8 @@ class PartFiles {
   std::string remedy_;
   std::vector<std::filesystem::path> made_;  ///< folders made here, outermost first
 };
+
+/// Closes a text file that was being written. Throws Error{output} if not all of it could be.
+void close_text(std::ofstream& file, const std::string& path);
 
 }  // namespace lagscape
