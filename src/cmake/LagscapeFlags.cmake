@@ -11,7 +11,8 @@ endif()
 
 add_library(lagscape_flags INTERFACE)
 target_compile_options(lagscape_flags INTERFACE
-  -ffp-contract=off -fno-math-errno -Wall -Wextra -Wpedantic -Wconversion -Wsign-conversion -Wshadow -Wdouble-promotion -Wundef
+  -ffp-contract=off -fno-math-errno
+  -Wall -Wextra -Wpedantic -Wconversion -Wsign-conversion -Wshadow -Wdouble-promotion -Wundef
   # GCC 12 warns of overlapping copies inside std::string's operator+ where there are none (gcc.gnu.org PR 105651).
   $<$<CXX_COMPILER_ID:GNU>:-Wno-restrict>
   $<$<BOOL:${LAGSCAPE_WERROR}>:-Werror>)

@@ -160,8 +160,8 @@ class SlabReader {
     return std::max<std::size_t>(1, room >= chunk ? room / chunk * chunk : chunk);
   }
 
-  /// A slab from `from` on that ends on the last chunk edge within `length`, or is `length` long where no edge lies in it
-  /// (cutting it short there would only read its chunk once more).
+  /// A slab from `from` on that ends on the last chunk edge within `length`, or is `length` long where no edge lies in
+  /// it (cutting it short there would only read its chunk once more).
   [[nodiscard]] std::size_t to_chunk_edge(DimRole role, std::size_t from, std::size_t length) const {
     const auto at = layout_.position(role);
     const std::size_t chunk = at ? chunk_[*at] : 1, edge = (from + length) / chunk * chunk;

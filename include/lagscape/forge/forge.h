@@ -14,7 +14,7 @@ struct ForgeReport {
 
 /// Makes the grid or panel of a recipe (DEVELOPERS.md, "Recipes"), truth maps beside it. Streams: memory does not grow
 /// with the number of steps. Throws Error. Existing files are refused unless `replace`.
-[[nodiscard]] ForgeReport forge_recipe(const std::string& recipe, const std::vector<std::string>& overrides, bool replace,
-                                       const Log& log);
+[[nodiscard]] ForgeReport forge_recipe(const std::string& recipe, const std::vector<std::string>& overrides,
+                                       bool replace, const Log& log);
 
 }  // namespace lagscape
