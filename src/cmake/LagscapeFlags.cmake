@@ -24,6 +24,7 @@ if(LAGSCAPE_SANITIZE)
       message(FATAL_ERROR "LAGSCAPE_SANITIZE: '${name}' is not address, undefined or leak")
     endif()
   endforeach()
-  target_compile_options(lagscape_flags INTERFACE -fsanitize=${LAGSCAPE_SANITIZE} -fno-sanitize-recover=all -fno-omit-frame-pointer)
+  target_compile_options(lagscape_flags INTERFACE
+    -fsanitize=${LAGSCAPE_SANITIZE} -fno-sanitize-recover=all -fno-omit-frame-pointer)
   target_link_options(lagscape_flags INTERFACE -fsanitize=${LAGSCAPE_SANITIZE})
 endif()
