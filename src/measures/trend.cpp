@@ -14,11 +14,13 @@ std::array<double (*)(const CellResult&), sizeof...(index)> p_getters(std::index
 }
 
 /// Names and texts of those maps are put together from the tests, once.
-const std::vector<std::array<std::string, 2>>& test_map_texts() {
+const std::vector<std::array<std::string, 4>>& test_map_texts() {
   static const auto texts = [] {
-    std::vector<std::array<std::string, 2>> all;
+    std::vector<std::array<std::string, 4>> all;
     for (const TrendTest& test : trend_tests()) {
-      all.push_back({test_map_name(test.name), "p-value of the trend by the test " + std::string(test.name)});
+      all.push_back({test_map_name(test.name), "p-value of the trend by the test " + std::string(test.name),
+                     "What this test says in each cell by itself: " + std::string(test.summary) + ".",
+                     "Assumes: " + std::string(test.assumptions) + "."});
     }
     return all;
   }();
@@ -159,10 +161,10 @@ std::vector<Measure> trend_measures() {
                         .group = MapGroup::trend,
                         .standard = false,
                         .long_name = test_map_texts()[i][1],
-                        .meaning = test.summary,
+                        .meaning = test_map_texts()[i][2],
                         .formula = "two-sided p of the slope",
                         .source = test.source,
-                        .cautions = test.assumptions,
+                        .cautions = test_map_texts()[i][3],
                         .ancillary = "status",
                         .valid_range = {0, 1},
                         .value = getters[i]});
