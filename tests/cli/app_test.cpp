@@ -1,6 +1,7 @@
 #include "lagscape/cli/app.h"
 
 #include <gtest/gtest.h>
+#include <unistd.h>
 
 #include <filesystem>
 #include <fstream>
@@ -31,7 +32,7 @@ Answer call(std::vector<std::string> arguments) {
 class App : public testing::Test {
  protected:
   void SetUp() override {
-    folder_ = fs::path(testing::TempDir()) / "lagscape_app";
+    folder_ = fs::path(testing::TempDir()) / ("lagscape_app_" + std::to_string(getpid()));
     fs::remove_all(folder_);
     fs::create_directories(folder_);
     std::ofstream(folder_ / "not_a.nc") << "this is no archive";

@@ -3,6 +3,7 @@
 #include <gtest/gtest.h>
 #include <netcdf.h>
 #include <udunits2.h>
+#include <unistd.h>
 
 #include <algorithm>
 #include <cmath>
@@ -250,7 +251,7 @@ std::vector<std::string> broken_rules(const std::string& path) { return Examinat
 
 // The checker itself must be able to fail: a file that breaks many rules at once.
 TEST(ResultRules, AreFoundBrokenInAPoorFile) {
-  const std::string path = testing::TempDir() + "lagscape_poor.nc";
+  const std::string path = testing::TempDir() + "lagscape_poor_" + std::to_string(getpid()) + ".nc";
   int file = 0, y = 0, x = 0, lat = 0, map = 0;
   ASSERT_EQ(nc_create(path.c_str(), NC_CLOBBER | NC_NETCDF4, &file), NC_NOERR);
   nc_def_dim(file, "lat", 2, &y);

@@ -1,6 +1,7 @@
 #include "lagscape/job/job_file.h"
 
 #include <gtest/gtest.h>
+#include <unistd.h>
 
 #include <cmath>
 #include <filesystem>
@@ -20,7 +21,7 @@ namespace fs = std::filesystem;
 class JobFile : public testing::Test {
  protected:
   void SetUp() override {
-    folder_ = fs::path(testing::TempDir()) / "lagscape_job_file";
+    folder_ = fs::path(testing::TempDir()) / ("lagscape_job_file_" + std::to_string(getpid()));
     fs::remove_all(folder_);
     fs::create_directories(folder_ / "data");
     for (const char* name : {"data/wet_1990.nc", "data/wet_1980.nc", "data/land.nc", "data/sites.csv"})

@@ -1,6 +1,7 @@
 #include "lagscape/job/toml_reader.h"
 
 #include <gtest/gtest.h>
+#include <unistd.h>
 
 #include <filesystem>
 #include <fstream>
@@ -160,7 +161,7 @@ TEST(TomlReader, FilesThatCannotBeReadAreRefused) {
 }
 
 TEST(TomlReader, FolderIsThatOfTheFile) {
-  const auto folder = std::filesystem::path(testing::TempDir()) / "lagscape_toml";
+  const auto folder = std::filesystem::path(testing::TempDir()) / ("lagscape_toml_" + std::to_string(getpid()));
   std::filesystem::create_directories(folder);
   std::ofstream(folder / "j.toml") << "a = 1\n";
   const auto toml = TomlReader::from_file((folder / "j.toml").string());

@@ -1,6 +1,7 @@
 #include "lagscape/pipeline/run.h"
 
 #include <gtest/gtest.h>
+#include <unistd.h>
 
 #include <filesystem>
 #include <fstream>
@@ -19,7 +20,8 @@ class Run : public testing::Test {
  protected:
   Run()
       : folder_(fs::temp_directory_path() /
-                ("lagscape_" + std::string(testing::UnitTest::GetInstance()->current_test_info()->name()))) {
+                ("lagscape_" + std::string(testing::UnitTest::GetInstance()->current_test_info()->name()) + "_" +
+                 std::to_string(getpid()))) {
     fs::remove_all(folder_);
     fs::create_directories(folder_);
   }

@@ -1,4 +1,5 @@
 #include <gtest/gtest.h>
+#include <unistd.h>
 
 #include <filesystem>
 #include <fstream>
@@ -17,7 +18,7 @@ namespace fs = std::filesystem;
 class StarterJob : public testing::Test {
  protected:
   void SetUp() override {
-    folder_ = fs::path(testing::TempDir()) / "lagscape_starter_job";
+    folder_ = fs::path(testing::TempDir()) / ("lagscape_starter_job_" + std::to_string(getpid()));
     fs::remove_all(folder_);
     fs::create_directories(folder_ / "data");
     fs::create_directories(folder_ / "jobs");
