@@ -12,7 +12,8 @@
 namespace lagscape {
 namespace {
 
-constexpr double kFewestForAcf = 10, kFewestForTrend = 20;
+/// Values needed beyond the parameters of the preparation.
+constexpr double kSpareValues = 10;
 /// Below this many pairs (and a tenth of the values) an autocorrelation is not estimated.
 constexpr double kFewestPairs = 10;
 constexpr double kGapShare = 0.2, kShortYears = 10, kTiedShare = 0.5;
@@ -173,7 +174,7 @@ std::uint8_t Analysis::Impl::describe_record(const double* tile, std::size_t cel
     cell.longest_gap = raw.longest_gap[lane] * settings.lag_units_per_step;
     if (1 - cell.valid_share > kGapShare) flag(lane, kManyGaps);
     if (span / settings.steps_per_year < kShortYears) flag(lane, kShortRecord);
-    const double fewest = std::max(settings.min_count, kFewestForAcf);
+    const double fewest = std::max(settings.min_count, static_cast<double>(kFewestValues));
     if (raw.count[lane] < fewest || cell.valid_share < settings.min_share) {
       flag(lane, kTooFew);
       continue;
@@ -214,7 +215,8 @@ std::uint8_t Analysis::Impl::prepare(const double* tile, std::uint8_t lanes) noe
     cell.dropped_values = fit.dropped[lane];
     const double m = fit.count[lane];
     const double sd = std::sqrt(fit.sum_squares[lane] / std::max(1.0, m));
-    const bool few = m < std::max(settings.min_count, fit.parameters[lane] + kFewestForAcf);
+    const bool few =
+        m < std::max({settings.min_count, static_cast<double>(kFewestValues), fit.parameters[lane] + kSpareValues});
     if (has(fit.incomplete, lane)) {
       flag(lane, kSeasonIncomplete);
     } else if (few) {
@@ -383,7 +385,7 @@ void Analysis::Impl::fit_memory(std::size_t lane) noexcept {
   const OrderChoice choice{settings.criterion, settings.fixed_order, m, fit.parameters[lane]};
   const int order = choose_order({k.data(), orders}, largest, choice);
   if (order == 0) {
-    flag(lane, m < n ? kManyGaps : kTooFew);  // not even the first order has enough gap-free terms
+    flag(lane, kManyGaps);  // not even the first order has enough gap-free terms
     return;
   }
   const auto p = static_cast<std::size_t>(order);
@@ -450,7 +452,7 @@ void Analysis::Impl::trends(const double* tile, std::uint8_t lanes) noexcept {
 void Analysis::Impl::judge_trend(std::size_t lane, const LaneFit& from, double lag1) noexcept {
   CellResult& cell = results[lane];
   const double m = from.count[lane], rate = settings.steps_per_rate;
-  if (m < std::max(kFewestForTrend, from.parameters[lane] + 3)) return;
+  if (m < from.parameters[lane] + 3) return;
   cell.slope = from.slope[lane] * rate;
   cell.total = from.slope[lane] * (raw.last[lane] - raw.first[lane]);
   const double first[] = {lag1};

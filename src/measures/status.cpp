@@ -12,7 +12,7 @@ constexpr std::array kStatusBits = {
     StatusBit{kTooFew, "too_few_values", "too few values",
               "Fewer valid values, or a smaller share of them, than prepare.min_count and prepare.min_share ask for "
               "(or than the "
-              "statistics need: 10 more than the parameters of the fit).",
+              "statistics need: 21, and 10 more than the parameters of the fit).",
               true},
     StatusBit{kConstant, "constant", "constant",
               "All values are equal, or season and trend explain them wholly: there is no variability left to "

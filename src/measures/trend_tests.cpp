@@ -40,6 +40,7 @@ constexpr std::array kTests = {
                   "bias after "
                   "Shaman & Stine 1988, J. Am. Stat. Assoc. 83:842; degrees of freedom of season and gaps allowed for",
         .cost = "one pass over the record",
+        .covered_order = 1,
         .verdict = ols_neff,
     },
     TrendTest{
@@ -50,6 +51,7 @@ constexpr std::array kTests = {
             "roughly normal; with any memory p is too small, often by orders of magnitude",
         .source = "common practice (Student's t of a least-squares slope), no published source",
         .cost = "one pass over the record",
+        .covered_order = 0,
         .verdict = ols,
     },
 };

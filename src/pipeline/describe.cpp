@@ -204,11 +204,13 @@ Attributes closing_attributes(const RunReport& report) {
            "missing: {}; infinite: {}; out of range: {}; missing by the job: {}; in seasons with a single value: {}",
            report.values.fill, report.values.infinite, report.values.out_of_range, report.values.job_missing,
            report.values_in_short_seasons)},
-      {"lagscape_trend_counts", fmt::format("tested: {}; p <= alpha as if independent: {}; p <= alpha by {}: {}; "
-                                            "standing after field control: {} ({} rising, "
-                                            "{} falling); false ones among them that the rate allows: {}",
-                                            trend.tested, trend.independent, trend.test, trend.local, trend.standing,
-                                            trend.rising, trend.falling, human_number(trend.expected_false))},
+      {"lagscape_trend_counts",
+       fmt::format("tested: {}; p <= alpha as if independent: {}; p <= alpha by {}: {}; "
+                   "standing after field control: {} ({} rising, "
+                   "{} falling); false ones among them that the rate allows: {}; standing with memory of "
+                   "higher order than the test assumes: {}",
+                   trend.tested, trend.independent, trend.test, trend.local, trend.standing, trend.rising,
+                   trend.falling, human_number(trend.expected_false), trend.beyond_order)},
   };
 }
 

@@ -3,6 +3,7 @@
 #include <cmath>
 #include <limits>
 
+#include "lagscape/measures/trend_test.h"
 #include "lagscape/stats/false_discovery.h"
 
 namespace lagscape {
@@ -14,6 +15,7 @@ FieldResult field_step(const FieldInput& input, const JobSpec& job) {
   result.trend_class.assign(input.p.size(), std::numeric_limits<float>::quiet_NaN());
   RunReport::TrendCounts& counts = result.counts;
   counts.test = job.trend.tests.front();
+  const int covered = find_trend_test(counts.test)->covered_order;
   for (std::size_t c = 0; c < input.p.size(); ++c) {
     if (input.p_independent[c] <= job.trend.alpha) ++counts.independent;
     if (std::isnan(input.p[c])) continue;
@@ -24,6 +26,7 @@ FieldResult field_step(const FieldInput& input, const JobSpec& job) {
     counts.standing += static_cast<std::size_t>(stands);
     counts.rising += static_cast<std::size_t>(stands && input.slope[c] > 0);
     counts.falling += static_cast<std::size_t>(stands && input.slope[c] < 0);
+    counts.beyond_order += static_cast<std::size_t>(stands && covered > 0 && input.order[c] > covered);
     result.trend_class[c] = !stands ? 0.0F : input.slope[c] > 0 ? 1.0F : 2.0F;
   }
   const double rate = control == FieldControl::none ? 0 : job.field.rate;

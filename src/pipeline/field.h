@@ -11,6 +11,7 @@ namespace lagscape {
 struct FieldInput {
   std::vector<double> p, p_independent;  ///< NaN where not tested
   std::vector<float> slope;
+  std::vector<std::uint8_t> order;  ///< of the fitted autoregression
 };
 
 struct FieldResult {

@@ -54,7 +54,8 @@ struct WholeMap {
         time(cells),
         size(cells),
         lag1(cells),
-        field{std::vector<double>(cells), std::vector<double>(cells), std::vector<float>(cells)} {}
+        field{std::vector<double>(cells), std::vector<double>(cells), std::vector<float>(cells),
+              std::vector<std::uint8_t>(cells)} {}
   std::vector<std::int16_t> status;  ///< -1: masked
   std::vector<float> time, size, lag1;
   FieldInput field;
@@ -218,6 +219,7 @@ class VariableRun {
     whole_.lag1[cell] = static_cast<float>(unless_masked(result.lag1));
     whole_.field.p[cell] = unless_masked(result.p);
     whole_.field.p_independent[cell] = unless_masked(result.p_independent);
+    whole_.field.order[cell] = static_cast<std::uint8_t>(result.order);
     whole_.field.slope[cell] = static_cast<float>(result.slope);
     if (masked) {
       maps.mask(at);

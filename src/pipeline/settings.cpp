@@ -46,26 +46,54 @@ std::size_t in_steps(const JobSpec& job, std::string_view key, const StepsOrDura
   return static_cast<std::size_t>(steps);
 }
 
-void resolve_season(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& out) {
-  const SeasonRule asked = job.prepare.season;
+/// What "auto" makes of the season, and why.
+SeasonRule automatic_season(const TimeAxis& axis, std::string& reason) {
+  constexpr double kTwoYears = 1.99;  // 730 days are two years, too
   const bool months = axis.step().kind == StepKind::months;
-  const bool years = axis.step().kind == StepKind::years;
-  const double per_year = axis.steps_per_year();
-  std::string reason;
-  out.season = asked;
-  if (asked == SeasonRule::automatic) {
-    out.season = months ? SeasonRule::calendar : SeasonRule::harmonics;
-    reason = months ? "auto: calendar months" : "auto: steps shorter than a month";
-    if (years || per_year < 4 || (months && axis.seasons() == 1)) {
-      out.season = SeasonRule::none;
-      reason = "auto: the steps are too long to show a season";
-    } else if (axis.years() < 2) {
-      out.season = SeasonRule::none;
-      reason = "auto: a record of less than two years does not show its season";
-    } else if (job.prepare.remove == RemoveRule::season_difference) {
-      out.season = SeasonRule::none;
-      reason = "auto: the season difference has taken it out";
+  if (axis.step().kind == StepKind::years || axis.steps_per_year() < 4 || (months && axis.seasons() == 1)) {
+    reason = "auto: the steps are too long to show a season";
+    return SeasonRule::none;
+  }
+  if (axis.years() < kTwoYears) {
+    reason = "auto: a record of less than two years does not show its season";
+    return SeasonRule::none;
+  }
+  reason = months ? "auto: calendar months" : "auto: steps shorter than a month";
+  return months ? SeasonRule::calendar : SeasonRule::harmonics;
+}
+
+/// Harmonics of the year, and of the day for steps shorter than a day.
+void resolve_harmonics(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& out) {
+  const bool automatic = job.prepare.season == SeasonRule::automatic;
+  if (out.season == SeasonRule::harmonics || out.trend_season == SeasonRule::harmonics) {
+    const int most = static_cast<int>(std::floor(axis.steps_per_year() / 2));
+    out.harmonics = job.prepare.harmonics;
+    if (out.harmonics > most && automatic && most >= 1) out.harmonics = most;
+    if (out.harmonics > most) {
+      throw impossible(job, "prepare.harmonics",
+                       fmt::format("{} harmonics a year cannot be told apart with {} steps a year", out.harmonics,
+                                   human_number(axis.steps_per_year())),
+                       fmt::format("use at most {}", std::max(1, most)));
     }
+    out.told.push_back({"prepare.harmonics", fmt::format("{}", out.harmonics), ""});
+  }
+  const bool parts_of_days = axis.step().kind == StepKind::seconds && 2 * axis.step().count <= kDay;
+  if (parts_of_days && (automatic || out.season == SeasonRule::harmonics)) {
+    constexpr int kDaily = 2;
+    out.daily_harmonics = std::min(kDaily, static_cast<int>(kDay / axis.step().count / 2));
+    out.notes.push_back(
+        fmt::format("steps are shorter than a day: {} harmonics of the day are taken out, too", out.daily_harmonics));
+  }
+}
+
+void resolve_season(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& out) {
+  std::string reason;
+  const bool automatic = job.prepare.season == SeasonRule::automatic;
+  out.season = automatic ? automatic_season(axis, reason) : job.prepare.season;
+  out.trend_season = out.season;
+  if (automatic && out.season != SeasonRule::none && job.prepare.remove == RemoveRule::season_difference) {
+    out.season = SeasonRule::none;
+    reason = "auto: the season difference takes it out";
   }
   if (out.season == SeasonRule::calendar && axis.seasons() == 1) {
     throw impossible(job, "prepare.season",
@@ -73,23 +101,10 @@ void resolve_season(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& 
                      "use season = \"none\"");
   }
   out.told.push_back({"prepare.season", choice_word("prepare.season", out.season), reason});
-  if (out.season != SeasonRule::harmonics) return;
-  const int most = static_cast<int>(std::floor(per_year / 2));
-  out.harmonics = job.prepare.harmonics;
-  if (out.harmonics > most && asked == SeasonRule::automatic && most >= 1) out.harmonics = most;
-  if (out.harmonics > most) {
-    throw impossible(job, "prepare.harmonics",
-                     fmt::format("{} harmonics a year cannot be told apart with {} steps a year", out.harmonics,
-                                 human_number(per_year)),
-                     fmt::format("use at most {}", std::max(1, most)));
+  if (automatic && axis.step().kind != StepKind::years && out.trend_season == SeasonRule::none) {
+    out.notes.push_back(fmt::format("no season of the year is taken out ({})", reason));
   }
-  out.told.push_back({"prepare.harmonics", fmt::format("{}", out.harmonics), ""});
-  if (axis.step().kind == StepKind::seconds && 2 * axis.step().count <= kDay) {
-    constexpr int kDaily = 2;
-    out.daily_harmonics = std::min(kDaily, static_cast<int>(kDay / axis.step().count / 2));
-    out.notes.push_back(fmt::format(
-        "steps are shorter than a day: {} harmonics of the day are taken out with the season", out.daily_harmonics));
-  }
+  resolve_harmonics(job, axis, out);
 }
 
 void resolve_filter(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& out) {
@@ -142,11 +157,11 @@ void resolve_max_lag(const JobSpec& job, const TimeAxis& axis, ResolvedSettings&
 }
 
 /// Group of each step, seasonal columns and their frequencies: shared by the preparation's and the trend's design.
-DesignColumns season_columns(const ResolvedSettings& resolved, const TimeAxis& axis) {
+DesignColumns season_columns(SeasonRule season, const ResolvedSettings& resolved, const TimeAxis& axis) {
   DesignColumns columns;
   columns.steps = axis.size();
   columns.group.assign(axis.size(), 0);
-  if (resolved.season == SeasonRule::calendar) {
+  if (season == SeasonRule::calendar) {
     columns.groups = static_cast<std::size_t>(axis.seasons());
     for (std::size_t t = 0; t < axis.size(); ++t) columns.group[t] = static_cast<std::uint16_t>(axis.season_of(t));
     const double period =
@@ -168,7 +183,8 @@ DesignColumns season_columns(const ResolvedSettings& resolved, const TimeAxis& a
       columns.frequencies.push_back({kTurn * h / period, 2 * h == period ? 1 : 2});
     }
   };
-  add_harmonics(resolved.harmonics, axis.steps_per_year(), [&](std::size_t t) { return axis.year_phase(t); });
+  add_harmonics(season == SeasonRule::harmonics ? resolved.harmonics : 0, axis.steps_per_year(),
+                [&](std::size_t t) { return axis.year_phase(t); });
   if (resolved.daily_harmonics > 0) {
     add_harmonics(resolved.daily_harmonics, static_cast<double>(kDay) / static_cast<double>(axis.step().count),
                   [&](std::size_t t) { return axis.day_phase(t); });
@@ -211,7 +227,8 @@ ResolvedSettings resolve_settings(const JobSpec& job, const TimeAxis& axis) {
 std::unique_ptr<AnalysisSettings> analysis_settings(const JobSpec& job, const ResolvedSettings& resolved,
                                                     const TimeAxis& axis, const std::vector<std::string>& cubes) {
   const RemoveRule remove = job.prepare.remove;
-  DesignColumns prepare = season_columns(resolved, axis), trend = prepare;
+  DesignColumns prepare = season_columns(resolved.season, resolved, axis);
+  DesignColumns trend = season_columns(resolved.trend_season, resolved, axis);
   add_trend(prepare, remove == RemoveRule::linear ? 1 : remove == RemoveRule::quadratic ? 2 : 0);
   add_trend(trend, 1);
   auto settings = std::make_unique<AnalysisSettings>(prepare, trend, job.memory.confidence, job.trend.alpha);

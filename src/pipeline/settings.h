@@ -12,9 +12,10 @@ namespace lagscape {
 
 /// A job's settings once the time axis is known: every "auto" decided, every duration in steps.
 struct ResolvedSettings {
-  SeasonRule season = SeasonRule::none;
-  int harmonics = 0;        ///< per year, when season is harmonics
-  int daily_harmonics = 0;  ///< per day, for steps shorter than a day
+  SeasonRule season = SeasonRule::none;        ///< of the preparation
+  SeasonRule trend_season = SeasonRule::none;  ///< of the trend's own fit, which sees the series before any filter
+  int harmonics = 0;                           ///< per year, where a season is harmonics
+  int daily_harmonics = 0;                     ///< per day, for steps shorter than a day
   std::size_t filter_length = 1;
   std::size_t max_lag = 0;             ///< of the cubes
   std::vector<EffectiveSetting> told;  ///< for people, in the order of the job file

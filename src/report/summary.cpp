@@ -37,6 +37,19 @@ std::string values_words(const ValueCounts& values) {
   return parts.empty() ? "no value" : "values: " + join(parts, ", ");
 }
 
+/// What preparation took out: "season: calendar (auto: calendar months); linear".
+std::string preparation_words(const JobPlan& plan) {
+  std::string season, remove;
+  for (const EffectiveSetting& setting : plan.settings) {
+    if (setting.key == "prepare.season") {
+      season = fmt::format("season: {}", setting.value);
+      if (setting.value == "none" && !setting.reason.empty()) season += fmt::format(" ({})", setting.reason);
+    }
+    if (setting.key == "prepare.remove") remove = fmt::format("remove: {}", setting.value);
+  }
+  return fmt::format("{}; {}", season, remove);
+}
+
 std::string record_text(const RunReport& report) {
   const Panel& panel = report.plan.panel;
   std::string out = "\nRecord\n";
@@ -44,6 +57,7 @@ std::string record_text(const RunReport& report) {
   out += line("time", time_words(panel));
   out += line("place", panel.geometry.describe());
   out += line("input", counted(panel.sources.size(), "file"));
+  out += line("prepared", preparation_words(report.plan));
   out += line("set aside", values_words(report.values));
   if (report.values_in_short_seasons > 0) {
     out += line("", fmt::format("{} in seasons that have fewer than two values",
@@ -127,6 +141,13 @@ std::string trend_text(const RunReport& report) {
     const std::string text =
         fmt::format("Of those that stand, up to about {} may be false alarms: that is what the rate allows.",
                     figure(trend.expected_false));
+    out += "  " + wrapped(text, kReportWidth, 2, 2) + "\n";
+  }
+  if (trend.beyond_order > 0) {
+    const std::string text = fmt::format(
+        "In {} of those that stand the memory found is of higher order than the test assumes (map ar_order): "
+        "its p-values are too small there, and false alarms can be more than the rate allows.",
+        grouped(trend.beyond_order));
     out += "  " + wrapped(text, kReportWidth, 2, 2) + "\n";
   }
   return out;
@@ -235,6 +256,7 @@ std::string json_trend(const RunReport& report) {
                        {"standing", json::number(trend.standing)},
                        {"rising", json::number(trend.rising)},
                        {"falling", json::number(trend.falling)},
+                       {"standing_with_memory_beyond_the_test", json::number(trend.beyond_order)},
                        {"false_alarms_allowed", json::number(trend.expected_false)},
                        {"assumptions", json::text(assumptions(report))}});
 }

@@ -19,6 +19,9 @@ FieldInput example() {
   input.p_independent.assign(input.p.size(), 0.01);
   input.slope.assign(input.p.size(), -1.0F);
   input.slope[0] = 2.0F;
+  input.order.assign(input.p.size(), 1);
+  input.order[1] = 2;
+  input.order[8] = 5;  // does not stand
   return input;
 }
 
@@ -31,6 +34,7 @@ TEST(Field, RejectsWhatThePaperRejects) {
   EXPECT_EQ(result.counts.rising, 1U);
   EXPECT_EQ(result.counts.falling, 3U);
   EXPECT_EQ(result.counts.local, 9U);
+  EXPECT_EQ(result.counts.beyond_order, 1U) << "the test ols-neff covers first-order memory only";
   EXPECT_EQ(result.trend_class[0], 1.0F);
   EXPECT_EQ(result.trend_class[1], 2.0F);
   EXPECT_EQ(result.trend_class[5], 0.0F);
@@ -60,7 +64,7 @@ TEST(Field, StricterUnderAnyDependenceAndOpenWithoutControl) {
 }
 
 TEST(Field, AMapWithoutTestsHasNoTrends) {
-  FieldInput input{{kNaN, kNaN}, {kNaN, kNaN}, {0.0F, 0.0F}};
+  FieldInput input{{kNaN, kNaN}, {kNaN, kNaN}, {0.0F, 0.0F}, {0, 0}};
   const FieldResult result = field_step(input, JobSpec{});
   EXPECT_EQ(result.counts.tested, 0U);
   EXPECT_EQ(result.counts.independent, 0U);

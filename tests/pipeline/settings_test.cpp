@@ -30,8 +30,9 @@ TEST(Settings, SeasonFollowsTheStep) {
   EXPECT_EQ(resolve_settings(job, axis_of({StepKind::months, 5}, 160)).season, SeasonRule::none);
   EXPECT_EQ(resolve_settings(job, axis_of(kDaily, 4000)).season, SeasonRule::harmonics);
   EXPECT_EQ(resolve_settings(job, axis_of(kYearly, 60)).season, SeasonRule::none);
-  // Less than two years: each month is seen once, which is no season.
+  // Less than two years: each month is seen once, which is no season; but 730 days are two years.
   EXPECT_EQ(resolve_settings(job, axis_of(kMonthly, 20)).season, SeasonRule::none);
+  EXPECT_EQ(resolve_settings(job, axis_of(kDaily, 730)).season, SeasonRule::harmonics);
 }
 
 TEST(Settings, StepsShorterThanADayGetHarmonicsOfTheDay) {
@@ -46,6 +47,23 @@ TEST(Settings, StepsShorterThanADayGetHarmonicsOfTheDay) {
   EXPECT_EQ(analysis->prepare_design.dense(), 2U * 4 + 3 + 1);
   EXPECT_EQ(analysis->prepare_design.frequencies()[5].columns, 1);
   EXPECT_NEAR(analysis->prepare_design.frequencies()[5].omega, std::numbers::pi, 1e-12);
+}
+
+TEST(Settings, TheDayNeedsNoTwoYearsToShow) {
+  const JobSpec job;
+  const ResolvedSettings settings = resolve_settings(job, axis_of({StepKind::seconds, 3600}, 8760));
+  EXPECT_EQ(settings.season, SeasonRule::none);
+  EXPECT_EQ(settings.daily_harmonics, 2);
+  EXPECT_EQ(settings.notes.size(), 2U) << "both are told";
+}
+
+TEST(Settings, TheTrendSeesTheSeasonThatASeasonDifferenceTakesOut) {
+  JobSpec job;
+  job.prepare.remove = RemoveRule::season_difference;
+  const TimeAxis axis = axis_of(kMonthly, 480);
+  const auto analysis = analysis_settings(job, resolve_settings(job, axis), axis, {});
+  EXPECT_EQ(analysis->prepare_design.groups(), 1U);
+  EXPECT_EQ(analysis->trend_design.groups(), 12U);
 }
 
 TEST(Settings, MonthIndicatorsCountAsElevenColumnsBesideTheMean) {

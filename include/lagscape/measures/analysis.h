@@ -14,6 +14,10 @@
 
 namespace lagscape {
 
+/// Fewest values of a cell that is analysed, whatever the job allows: an autoregression of order 1 needs 20 usable
+/// terms, a trend 20 values.
+inline constexpr std::size_t kFewestValues = 21;
+
 /// Filters that replace the series before the season is fitted.
 enum class Filter { none, difference, running_mean };
 

@@ -16,6 +16,8 @@ struct TrendTest {
   std::string_view assumptions;  ///< what its p-value rests on; written into results
   std::string_view source;
   std::string_view cost;
+  /// Order of autoregression that the assumptions cover; 0: any order is told to the user by the assumptions alone.
+  int covered_order;
   TrendVerdict (*verdict)(const TrendInput&);
 };
 

@@ -69,7 +69,8 @@ struct RunReport {
   struct TrendCounts {
     std::string test;
     std::size_t tested = 0, independent = 0, local = 0, standing = 0, rising = 0, falling = 0;
-    double expected_false = 0;  ///< standing * rate: what the rate allows
+    std::size_t beyond_order = 0;  ///< standing where the fitted memory is of higher order than the test assumes
+    double expected_false = 0;     ///< standing * rate: what the rate allows
   } trend;
   double wall_seconds = 0, cpu_seconds = 0, read_seconds = 0, compute_seconds = 0, write_seconds = 0;
   std::size_t peak_rss_bytes = 0;
