@@ -10,6 +10,7 @@
 #include <unordered_map>
 
 #include "io/csv_reader.h"
+#include "io/grid_geometry.h"
 #include "io/time_decode.h"
 #include "lagscape/base/error.h"
 #include "lagscape/base/text.h"
@@ -251,7 +252,9 @@ void cut_to_box(const std::array<double, 4>& box, Geometry& geometry, std::vecto
       kept.push_back(i);
   }
   if (kept.empty())
-    throw Error(ErrorKind::input, fmt::format("none of the {} sites lies in the box", geometry.site_names.size()),
+    throw Error(ErrorKind::input,
+                fmt::format("none of the {} sites lies in the box: they cover {}", geometry.site_names.size(),
+                            extent_words(geometry.lat, geometry.lon)),
                 "[input] box", "the box is [west, south, east, north] in degrees; widen it or leave it out");
   if (!unknown.empty())
     notes.push_back("left out by the box, because their coordinates are unknown: " + some_names(unknown));

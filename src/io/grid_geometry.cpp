@@ -14,6 +14,7 @@
 namespace lagscape {
 namespace {
 
+constexpr double kInfinity = std::numeric_limits<double>::infinity();
 constexpr double kDegreeSlack = 1e-6;    // of box edges and of longitudes computed modulo 360
 constexpr double kSameCellShare = 1e-3;  // of a cell: coordinates of two files may differ by rounding
 constexpr double kRadiusOfRotatedGrids =
@@ -216,10 +217,20 @@ std::vector<ColumnRun> runs_of(const std::vector<std::size_t>& order) {
   return runs;
 }
 
+// "180 x 360 cells, lat ..., lon ..., 1 apart" or "12 sites, lat ..., lon ...".
+std::string covered(const Geometry& geometry) {
+  if (geometry.kind != GeometryKind::latlon)
+    return geometry.lat.empty() ? geometry.describe()
+                                : fmt::format("{}, {}", geometry.describe(), extent_words(geometry.lat, geometry.lon));
+  if (geometry.rows < 2 || geometry.cols < 2) return geometry.describe();
+  return fmt::format("{}; their centres are {} by {} degrees apart", geometry.describe(),
+                     human_number(smallest_step(geometry.y.values)), human_number(smallest_step(geometry.x.values)));
+}
+
 [[noreturn]] void refuse_box(const std::array<double, 4>& box, const Geometry& geometry, const char* what) {
   throw Error(ErrorKind::input,
               fmt::format("no {} lies in the box {}, {}, {}, {}: the data cover {}", what, box[0], box[1], box[2],
-                          box[3], geometry.describe()),
+                          box[3], covered(geometry)),
               "[input] box", "the box is [west, south, east, north] in degrees; widen it or leave it out");
 }
 
@@ -289,19 +300,46 @@ bool is_global(const std::vector<double>& ascending) {
   return std::fabs(span + step - 360) < step / 2;
 }
 
-Arrangement arrange_latlon_box(const Geometry& in, const std::array<double, 4>& box) {
+// Columns in order of longitude: leaves out those at the end that are the first ones once more, a turn further on (both
+// 0 and 360), which would count twice in whatever is told about the map.
+void drop_repeated(std::vector<std::size_t>& order, std::vector<double>& ascending, std::vector<std::string>& notes) {
+  if (ascending.size() < 3) return;
+  const double slack = kSameCellShare * smallest_step(ascending);
+  const auto repeated = [&] {
+    const double before = ascending.back() - 360;
+    const auto at = std::lower_bound(ascending.begin(), ascending.end(), before - slack);
+    return before >= ascending.front() - slack && *at <= before + slack;
+  };
+  const std::size_t all = ascending.size();
+  const double last = ascending.back();
+  while (ascending.size() > 1 && repeated()) {
+    ascending.pop_back();
+    order.pop_back();
+  }
+  if (const std::size_t dropped = all - ascending.size(); dropped == 1)
+    notes.push_back(fmt::format("the column at longitude {} repeats the one at {}; it is left out", number_text(last),
+                                number_text(ascending.front())));
+  else if (dropped > 1)
+    notes.push_back(fmt::format("the last {} columns, up to longitude {}, repeat the first ones; they are left out",
+                                dropped, number_text(last)));
+}
+
+Arrangement arrange_latlon_box(const Geometry& in, const std::array<double, 4>& box, std::vector<std::string>& notes) {
   std::size_t first = in.rows, end = 0;
   for (std::size_t r = 0; r < in.rows; ++r)
     if (in.y.values[r] >= box[1] - kDegreeSlack && in.y.values[r] <= box[3] + kDegreeSlack) {
       first = std::min(first, r);
       end = r + 1;
     }
-  if (first >= end) refuse_box(box, in, "row of cells");
+  if (first >= end) refuse_box(box, in, "centre of a row of cells");
   const double width = box[2] - box[0] >= 360 ? 360 : east_of(box[0], box[2]);
+  std::vector<std::size_t> single = all_columns(in);
+  std::vector<double> ascending = picked(in.x.values, single);
+  drop_repeated(single, ascending, notes);
   std::vector<std::pair<double, std::size_t>> inside;
-  for (std::size_t c = 0; c < in.cols; ++c)
+  for (const std::size_t c : single)
     if (const double away = east_of(box[0], in.x.values[c]); away <= width + kDegreeSlack) inside.emplace_back(away, c);
-  if (inside.empty()) refuse_box(box, in, "column of cells");
+  if (inside.empty()) refuse_box(box, in, "centre of a column of cells");
   std::sort(inside.begin(), inside.end());
   std::vector<std::size_t> order;
   std::vector<double> longitudes;
@@ -321,6 +359,7 @@ Arrangement arrange_latlon(const Geometry& in, LongitudeRule longitude, std::vec
   std::vector<double> values = picked(in.x.values, order);
   const bool reversed = in.cols > 1 && order.front() > order.back();
   if (reversed) notes.emplace_back("columns reversed, so that longitudes increase");
+  drop_repeated(order, values, notes);
   const bool beyond = values.back() >= 180 + kDegreeSlack;
   if (longitude == LongitudeRule::automatic && beyond && is_global(values)) {
     const auto from = std::lower_bound(values.begin(), values.end(), 180 - kDegreeSlack) - values.begin();
@@ -337,8 +376,11 @@ Arrangement arrange_latlon(const Geometry& in, LongitudeRule longitude, std::vec
 // Cells whose 2-D latitude and longitude lie in the box; rows and columns without any are cut off, the rest excluded.
 Arrangement arrange_surface_box(const Geometry& in, const std::array<double, 4>& box) {
   if (in.lat.empty())
-    throw Error(ErrorKind::job, "[input] box needs the latitude and longitude of each cell, and the file has none", "",
-                "leave out the box, or cut the file before by rows and columns");
+    throw Error(ErrorKind::job,
+                fmt::format("[input] box is in degrees and needs the latitude and longitude of each cell, and the file "
+                            "has none{}",
+                            in.x.units.empty() ? "" : fmt::format(", only coordinates in '{}'", in.x.units)),
+                "", "leave out the box, or cut the file before by rows and columns");
   std::size_t first = in.rows, end = 0, left = in.cols, right = 0;
   for (std::size_t cell = 0; cell < in.cells(); ++cell) {
     if (!in_box(box, in.lat[cell], in.lon[cell])) continue;
@@ -347,7 +389,7 @@ Arrangement arrange_surface_box(const Geometry& in, const std::array<double, 4>&
     left = std::min(left, cell % in.cols);
     right = std::max(right, cell % in.cols + 1);
   }
-  if (first >= end) refuse_box(box, in, "cell");
+  if (first >= end) refuse_box(box, in, "centre of a cell");
   std::vector<std::size_t> order = all_columns(in);
   std::erase_if(order, [&](std::size_t c) { return c < left || c >= right; });
   Arrangement out{cut(in, first, end - first, order), {first, runs_of(order)}, {}};
@@ -385,6 +427,18 @@ Arrangement arrange_sites(const Geometry& in, const std::optional<std::array<dou
 
 }  // namespace
 
+std::string extent_words(const std::vector<double>& lat, const std::vector<double>& lon) {
+  const auto span = [](const std::vector<double>& values) {
+    double low = kInfinity, high = -kInfinity;
+    for (const double value : values) {
+      low = std::fmin(low, value);
+      high = std::fmax(high, value);
+    }
+    return low <= high ? fmt::format("{} to {}", human_number(low, 6), human_number(high, 6)) : "unknown";
+  };
+  return fmt::format("lat {}, lon {}", span(lat), span(lon));
+}
+
 Geometry read_geometry(const NcFile& file, const VariableLayout& layout, std::vector<std::string>& notes) {
   Geometry geometry;
   geometry.kind = layout.kind;
@@ -420,7 +474,7 @@ Arrangement arrange(const Geometry& in_file, const std::optional<std::array<doub
                     std::vector<std::string>& notes) {
   if (in_file.is_sites()) return arrange_sites(in_file, box, notes);
   if (in_file.kind == GeometryKind::latlon)
-    return box ? arrange_latlon_box(in_file, *box) : arrange_latlon(in_file, longitude, notes);
+    return box ? arrange_latlon_box(in_file, *box, notes) : arrange_latlon(in_file, longitude, notes);
   if (box) return arrange_surface_box(in_file, *box);
   const std::vector<std::size_t> order = all_columns(in_file);
   return {cut(in_file, 0, in_file.rows, order), {0, runs_of(order)}, {}};

@@ -31,6 +31,9 @@ struct Arrangement {
   std::vector<unsigned char> excluded;  ///< empty, or 1 for cells outside the box
 };
 
+/// "lat 50 to 54.5, lon -4 to 1", NaN passed over.
+[[nodiscard]] std::string extent_words(const std::vector<double>& lat, const std::vector<double>& lon);
+
 /// Reads where the cells are, in the order of the file. Longitudes that wrap inside are made monotone. Throws
 /// Error{input} where coordinates are not monotone.
 [[nodiscard]] Geometry read_geometry(const NcFile& file, const VariableLayout& layout, std::vector<std::string>& notes);

@@ -175,6 +175,32 @@ TEST(Archive, GlobalGridIsRolledUnlessTheJobKeepsIt) {
   EXPECT_EQ(open(job)->panel().geometry.x.values, grid.lon);
 }
 
+TEST(Archive, MeridianStoredTwiceIsReadOnce) {
+  const Folder folder;
+  GridFile grid;
+  grid.lon = {0, 90, 180, 270, 360};
+  InputRequest job = request({write(folder / "a.nc", grid)}, "wetness");
+  const auto rolled = open(job);
+  EXPECT_EQ(rolled->panel().geometry.x.values, (std::vector<double>{-180, -90, 0, 90}));
+  EXPECT_EQ(rolled->panel().geometry.cols, 4U);
+  EXPECT_TRUE(noted(rolled->panel(), "the column at longitude 360 repeats the one at 0"));
+  const auto values = all_values(*rolled);
+  EXPECT_EQ(values[2], value_at(0, 0, 0));
+  EXPECT_EQ(values[3], value_at(0, 0, 1));
+  EXPECT_EQ(values[4], value_at(0, 1, 2));
+  job.longitude = LongitudeRule::as_input;
+  EXPECT_EQ(open(job)->panel().geometry.x.values, (std::vector<double>{0, 90, 180, 270}));
+  job.box = {{-90, -90, 90, 90}};
+  EXPECT_EQ(open(job)->panel().geometry.x.values, (std::vector<double>{-90, 0, 90}));
+  grid.lon = {-180, -90, 0, 90, 180};
+  EXPECT_EQ(open(request({write(folder / "b.nc", grid)}, "wetness"))->panel().geometry.x.values,
+            (std::vector<double>{-180, -90, 0, 90}));
+  grid.lon = {0, 120, 240, 360, 480};
+  const auto halo = open(request({write(folder / "c.nc", grid)}, "wetness"));
+  EXPECT_EQ(halo->panel().geometry.x.values, (std::vector<double>{-120, 0, 120}));
+  EXPECT_TRUE(noted(halo->panel(), "the last 2 columns"));
+}
+
 TEST(Archive, RegionalLongitudesStayAndWrappedOnesRunOn) {
   const Folder folder;
   GridFile grid;
@@ -249,6 +275,7 @@ TEST(Archive, BoxCutsRowsAndColumnsAlsoAcrossTheDateLine) {
   EXPECT_EQ(all_values(*source)[2], value_at(0, 0, 4));
   job.box = {{100, 0, 110, 10}};
   EXPECT_TRUE(has(refusal(job), "box"));
+  EXPECT_TRUE(has(refusal(job), "degrees apart"));
 }
 
 // ---- other grids ----------------------------------------------------------------------------------------------------

@@ -308,7 +308,7 @@ TEST_F(CsvPanel, TheBoxKeepsTheSitesInsideIt) {
   request_.box = {-180, -90, 180, 90};
   EXPECT_EQ(open()->panel().geometry.site_names.size(), 3U);
   request_.box = {20, 0, 30, 20};
-  EXPECT_HAS(message(), "none of the 4 sites lies in the box");
+  EXPECT_HAS(message(), "none of the 4 sites lies in the box: they cover lat ");
   request_.sites.reset();
   EXPECT_HAS(message(), "box needs the coordinates");
 }
