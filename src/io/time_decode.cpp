@@ -37,7 +37,6 @@ constexpr UnitName kUnitNames[] = {
     {{UnitKind::years, 1}, {"year", "yr"}},
 };
 
-constexpr std::string_view kMend = "tell the unit in the job: [input] time = { unit = \"days since 1981-01-01\" }";
 constexpr std::string_view kMendWithCalendar =
     "check the file's time unit and calendar; the job can overrule them: "
     "[input] time = { unit = \"days since 1981-01-01\", calendar = \"standard\" }";
@@ -54,6 +53,15 @@ std::optional<TimeUnit> find_unit(std::string_view word) {
   return std::nullopt;
 }
 
+// The advice for a time unit without a date: what the values themselves tell, else what a unit has to look like.
+std::string mend_for(std::string_view units, std::span<const double> values) {
+  if (const auto written = written_dates(units, values))
+    return fmt::format("the values look like dates themselves ({} ...): [input] {}", number_text(values.front()),
+                       mend_line(*written));
+  const std::string word = units.empty() ? "days" : std::string(units);
+  return fmt::format("[input] time = {{ unit = \"{} since 1981-01-01\" }} with the date that zero stands for", word);
+}
+
 std::string unit_with_suggestion(std::string_view word) {
   std::vector<std::string> names;
   for (const UnitName& entry : kUnitNames) names.push_back(std::string(entry.names[0]) + "s");
@@ -63,15 +71,22 @@ std::string unit_with_suggestion(std::string_view word) {
 /// Reads "UNIT since DATE [TIME] [ZONE]"; every failure throws with the whole text quoted.
 class ReferenceParser {
  public:
-  ReferenceParser(std::string_view text, Calendar calendar, const std::string& where)
-      : whole_(trim(text)), lowered_(lower(whole_)), rest_(lowered_), calendar_(calendar), where_(where) {}
+  /// values: those counted in this unit, for advice only.
+  ReferenceParser(std::string_view text, Calendar calendar, std::span<const double> values, const std::string& where)
+      : whole_(trim(text)),
+        lowered_(lower(whole_)),
+        rest_(lowered_),
+        calendar_(calendar),
+        values_(values),
+        where_(where) {}
 
   TimeUnit unit;
   Seconds reference = 0;
   std::vector<std::string> notes;
 
   void parse() {
-    if (rest_.empty()) throw Error(ErrorKind::input, "the time variable has no unit", where_, std::string(kMend));
+    if (rest_.empty())
+      throw Error(ErrorKind::input, "the time variable has no unit", where_, mend_for(whole_, values_));
     if (parse_written_day()) return;
     parse_unit();
     parse_connector();
@@ -145,8 +160,7 @@ class ReferenceParser {
     if (rest_.empty())
       throw Error(ErrorKind::input,
                   fmt::format("time unit '{}' has no reference date, expected '{} since DATE'", whole_, whole_), where_,
-                  fmt::format("[input] time = {{ unit = \"{} since 1981-01-01\" }} with the date that zero stands for",
-                              whole_));
+                  mend_for(whole_, values_));
     if (take('@')) return;
     const std::string_view word = take_word();
     if (word != "since" && word != "after" && word != "from" && word != "ref")
@@ -186,6 +200,11 @@ class ReferenceParser {
 
   void check_date(const Date& date, std::size_t year_digits) {
     if (std::abs(date.year) > kMaxYear) fail(fmt::format("year {} is out of reach", date.year));
+    if (date.year == 0 && !valid_date(calendar_, {0, 1, 1}) && unit.kind == UnitKind::years)
+      throw Error(
+          ErrorKind::input,
+          fmt::format("time unit '{}': there is no year 0 in the {} calendar", whole_, calendar_name(calendar_)),
+          where_, "read the values as years: [input] time = { calendar = \"proleptic_gregorian\" }");
     if (date.year == 0 && !valid_date(calendar_, {0, 1, 1}))
       throw Error(
           ErrorKind::input,
@@ -280,6 +299,7 @@ class ReferenceParser {
   std::string lowered_;
   std::string_view rest_;
   Calendar calendar_;
+  std::span<const double> values_;
   const std::string& where_;
 };
 
@@ -400,13 +420,35 @@ class ValueDecoder {
 
 }  // namespace
 
+std::optional<TimeText> written_dates(std::string_view units, std::span<const double> values) {
+  const std::string unit = lower(trim(units));
+  const auto all = [&](auto holds) { return !values.empty() && std::all_of(values.begin(), values.end(), holds); };
+  const auto whole = [](double value) { return value == std::floor(value); };
+  const bool no_date = std::all_of(unit.begin(), unit.end(), [](unsigned char c) { return std::isdigit(c) == 0; });
+  const bool years = unit.empty() || unit == "1" || unit == "year" || unit == "years" || unit == "yr";
+  if (years && all([&](double v) { return whole(v) && v >= 1000 && v <= 3000; }))
+    return TimeText{"years since 0000-01-01", "proleptic_gregorian"};
+  const auto is_day = [&](double v) {
+    if (!whole(v) || v < 10000101 || v > 30001231) return false;
+    const auto digits = static_cast<int>(v);
+    return valid_date(Calendar::all_leap, {digits / 10000, digits / 100 % 100, digits % 100});
+  };
+  if ((no_date || unit == "1") && all(is_day)) return TimeText{"day as %Y%m%d.%f", ""};
+  return std::nullopt;
+}
+
+std::string mend_line(const TimeText& text) {
+  if (text.calendar.empty()) return fmt::format("time = {{ unit = \"{}\" }}", text.units);
+  return fmt::format("time = {{ unit = \"{}\", calendar = \"{}\" }}", text.units, text.calendar);
+}
+
 FileTimes decode_times(const std::string& file, const std::string& variable, std::span<const double> values,
                        const TimeText& text, std::vector<std::string>& notes) {
   const std::string where = fmt::format("file: {}, variable: {}", file, variable);
   FileTimes out;
   out.file = file;
   out.calendar = read_calendar(text.calendar, where, notes);
-  ReferenceParser parser(text.units, out.calendar, where);
+  ReferenceParser parser(text.units, out.calendar, values, where);
   parser.parse();
   notes.insert(notes.end(), parser.notes.begin(), parser.notes.end());
   const ValueDecoder decode(parser.unit, parser.reference, out.calendar, std::string(trim(text.units)), where);

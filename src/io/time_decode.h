@@ -4,6 +4,7 @@
 #include <optional>
 #include <span>
 #include <string>
+#include <string_view>
 #include <vector>
 
 #include "lagscape/grid/time_axis.h"
@@ -23,6 +24,12 @@ struct TimeText {
   std::string units;     ///< "days since 1981-01-01 00:00:00"
   std::string calendar;  ///< "" = standard
 };
+
+/// The text under which values are dates by themselves, where the unit names no date: years such as 1981 (unit "year"
+/// or none), or days written as 19810131 (any unit without a date). Nothing if they are neither.
+[[nodiscard]] std::optional<TimeText> written_dates(std::string_view units, std::span<const double> values);
+/// "time = { unit = "...", calendar = "..." }" for the [input] table of a job; the calendar is left out if empty.
+[[nodiscard]] std::string mend_line(const TimeText& text);
 
 /// Decodes CF time values with our own "UNIT since DATE" parser and calendars. `variable` is for messages. `notes`
 /// receives what was bent to be read ("24:00:00 taken as the next day"). Throws Error{input} naming file, value, units.

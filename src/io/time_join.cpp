@@ -98,6 +98,25 @@ void note_order(const std::vector<FileTimes>& files, std::vector<std::string>& n
       notes.push_back(fmt::format("{}: times are not in ascending order; sorted", file.file));
 }
 
+// What to do about gaps that are no whole numbers of a step; a step is only advised where it then fits.
+std::string uneven_remedy(const Stamps& stamps, const std::vector<Seconds>& gaps, Seconds common) {
+  const std::vector<Seconds>& times = stamps.times();
+  const TimeStep step{StepKind::seconds, common};
+  if (fit_step(stamps.calendar(), times, step))
+    return fmt::format(
+        "if the stamps are only inexact name the step: [input] time = {{ step = \"{}\" }}; else average "
+        "the values to equal steps first",
+        duration_text(step));
+  const auto year = [&](Seconds time) { return moment_of(stamps.calendar(), time).date.year; };
+  bool anew = true;  // every odd gap ends with the first stamp of a year
+  for (std::size_t i = 0; i < gaps.size(); ++i)
+    anew = anew && (gaps[i] % common == 0 || year(times[i]) != year(times[i + 1]));
+  const std::string remedy =
+      "resample the values to calendar months or to steps of one fixed length first; no `step` in the job helps here";
+  if (anew) return "steps that begin anew each year are not supported by this version: " + remedy;
+  return "steps of unequal length (such as three in each month) are not supported by this version: " + remedy;
+}
+
 // Says which gap breaks the pattern: the commonest one, and the first that is no whole number of them.
 [[noreturn]] void refuse_uneven(const Stamps& stamps) {
   const std::vector<Seconds>& times = stamps.times();
@@ -123,9 +142,7 @@ void note_order(const std::vector<FileTimes>& files, std::vector<std::string>& n
       fmt::format("times are not equally spaced: the commonest step is {} ({} of {}), but one of {} follows {}",
                   seconds(common), most, gaps.size(), seconds(gaps[at]), iso_text(stamps.calendar(), times[at])),
       fmt::format("between {} and {}", stamps.place(times[at]), stamps.place(times[at + 1])),
-      fmt::format("average the values to equal steps first; or, if the stamps are only inexact (by less than a quarter "
-                  "of a step), name the step: [input] time = {{ step = \"{}\" }}",
-                  duration_text({StepKind::seconds, common})));
+      uneven_remedy(stamps, gaps, common));
 }
 
 [[noreturn]] void refuse_step(const Stamps& stamps, TimeStep step) {
@@ -162,7 +179,7 @@ StepFit fit_times(const Stamps& stamps, const std::optional<TimeStep>& step) {
                 fmt::format("there is a single time step, {}, so the length of a step is unknown",
                             iso_text(stamps.calendar(), times.front())),
                 stamps.place(times.front()),
-                "name more files, or give the step in the job: [input] time = { step = \"P1M\" }");
+                "one time step cannot be analysed: name all files of the archive together");
   auto fit = find_step(stamps.calendar(), times);
   if (!fit) refuse_uneven(stamps);
   return std::move(*fit);
@@ -199,14 +216,24 @@ void check_size(const Stamps& stamps, const StepFit& fit) {
       "longer step: [input] time = { step = \"P1M\" }");
 }
 
-void note_shift(const Stamps& stamps, const StepFit& fit, std::vector<std::string>& notes) {
-  const double per_step = static_cast<double>(kDay) * mean_year_days(stamps.calendar()) /
-                          TimeAxis(stamps.calendar(), fit.step, 0, 1).steps_per_year();
-  constexpr double kMonthStamps = 0.06;  // mid-month stamps (14th .. 16th) are all the same month to anybody
-  const bool calendar_step = fit.step.kind != StepKind::seconds;
-  if (calendar_step ? fit.largest_shift <= kMonthStamps : fit.largest_shift * per_step <= 1) return;
+// The largest distance of a stamp from the nominal time of its step, in seconds. Calendar steps: only when it is more
+// than the stamps in the middle of months of unequal lengths are apart (14th .. 16th).
+void note_shift(const Stamps& stamps, const StepFit& fit, const TimeAxis& axis, std::vector<std::string>& notes) {
+  constexpr double kMonthStamps = 0.06;
+  const double step_seconds = static_cast<double>(kDay) * mean_year_days(axis.calendar()) / axis.steps_per_year();
+  double largest = fit.largest_shift * step_seconds;
+  if (fit.step.kind == StepKind::seconds) {
+    if (largest <= 1) return;
+  } else {
+    largest = 0;
+    for (std::size_t i = 0; i < fit.slots.size(); ++i) {
+      const Seconds nominal = axis.time(static_cast<std::size_t>(fit.slots[i]));
+      largest = std::max(largest, std::fabs(static_cast<double>(stamps.times()[i] - nominal)));
+    }
+    if (largest <= kMonthStamps * step_seconds) return;
+  }
   notes.push_back(fmt::format("times snapped to equal steps ({}), the largest shift is {}", step_words(fit.step),
-                              span_text(fit.largest_shift * per_step)));
+                              span_text(largest)));
 }
 
 // A bound of the period; a day that the calendar lacks (31 December of 360_day, 29 February of noleap) means the
@@ -316,9 +343,9 @@ JoinedAxis join_times(const std::vector<FileTimes>& files, const std::optional<T
   const Stamps stamps(files);
   const StepFit fit = fit_times(stamps, step);
   check_size(stamps, fit);
-  note_shift(stamps, fit, out.notes);
   const TimeAxis whole(stamps.calendar(), fit.step, fit.origin, static_cast<std::size_t>(fit.slots.back() + 1),
                        fit.day_of_month);
+  note_shift(stamps, fit, whole, out.notes);
   note_holes(fit, whole, out.notes);
   Cut cut{0, static_cast<std::int64_t>(whole.size())};
   if (period) cut = cut_to_period(whole, *period, out.notes);

@@ -438,15 +438,33 @@ TEST(Join, UnevenTimesAreRefusedWithTheGapThatBreaksThePattern) {
   stamps.push_back("2001-07-29");
   const std::string message = message_of([&] { static_cast<void>(join_one(stamps)); });
   EXPECT_HAS(message, "the commonest step is 10 days (19 of 21)");
-  EXPECT_HAS(message, "time = { step = \"P10D\" }");
+  EXPECT_HAS(message, "steps of unequal length");
   EXPECT_HAS(message, "harrow.nc, time step 21");
 }
 
-TEST(Join, ASingleTimeNeedsAStep) {
+TEST(Join, StepsThatBeginAnewEachYearAreRefusedWithoutAdviceThatFails) {
+  std::vector<std::string> stamps;
+  for (int year = 2001; year <= 2010; ++year)
+    for (int i = 0; i < 46; ++i)
+      stamps.push_back(iso_text(Calendar::standard, seconds_of(Calendar::standard, {year, 1, 1}) + i * 8 * kDay));
+  const std::string message = message_of([&] { static_cast<void>(join_one(stamps)); });
+  EXPECT_HAS(message, "the commonest step is 8 days");
+  EXPECT_HAS(message, "begin anew each year are not supported by this version");
+  EXPECT_EQ(message.find("time = {"), std::string::npos);
+}
+
+TEST(Join, StampsAnywhereInTheirMonthsAreSnappedWithANote) {
+  const JoinedAxis joined =
+      join_one({"2001-01-05", "2001-02-25", "2001-03-20", "2001-04-18", "2001-05-20", "2001-06-20"});
+  expect_axis(joined, "P1M", "2001-01-05", "2001-06-05", 6);
+  EXPECT_HAS(joined.notes.at(0), "times snapped to equal steps (monthly), the largest shift is 20 days");
+}
+
+TEST(Join, ASingleTimeIsRefusedUnlessTheJobGivesTheStep) {
   const FileTimes file = file_of("harrow.nc", {"2001-01-16"});
   const std::string message = message_of([&] { static_cast<void>(join_times({file}, std::nullopt, std::nullopt)); });
   EXPECT_HAS(message, "single time step, 2001-01-16");
-  EXPECT_HAS(message, "time = { step = \"P1M\" }");
+  EXPECT_HAS(message, "name all files of the archive together");
   expect_axis(join_times({file}, TimeStep{StepKind::months, 1}, std::nullopt), "P1M", "2001-01-16", "2001-01-16", 1);
 }
 
