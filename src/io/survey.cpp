@@ -4,13 +4,16 @@
 
 #include <algorithm>
 #include <cmath>
+#include <filesystem>
 #include <optional>
 #include <regex>
 #include <set>
 
 #include "io/csv_panel.h"
+#include "io/customary_fills.h"
 #include "io/nc_archive.h"
 #include "io/step_reader.h"
+#include "io/time_decode.h"
 #include "lagscape/base/text.h"
 
 namespace lagscape {
@@ -81,13 +84,8 @@ void choose(const NcFile& file, SurveyedVariable& variable) {
   }
 }
 
-/// "hours" with the date elsewhere ("ANALYSIS time from 20200101") becomes "hours since 2020-01-01"; nothing if the
-/// unit names its date already, or none is found.
-std::optional<std::string> mended_unit(const NcFile& file, const SurveyedVariable& variable) {
-  const VariableLayout layout = find_layout(file, variable.name, variable.select);
-  if (!layout.time) return std::nullopt;
-  const Attributes attributes = file.attributes(*layout.time);
-  const std::string unit = lower(text_attribute(attributes, "units"));
+/// "hours" with the date elsewhere ("ANALYSIS time from 20200101") becomes "hours since 2020-01-01".
+std::optional<TimeText> described_date(const Attributes& attributes, const std::string& unit) {
   static const std::regex kUnit("(seconds?|minutes?|hours?|days?|weeks?|months?|years?)");
   static const std::regex kDate("(^|[^0-9])([12][0-9]{3})-?([01][0-9])-?([0-3][0-9])([^0-9]|$)");
   if (!std::regex_match(unit, kUnit)) return std::nullopt;
@@ -95,9 +93,19 @@ std::optional<std::string> mended_unit(const NcFile& file, const SurveyedVariabl
     const std::string text = text_attribute(attributes, key);
     std::smatch found;
     if (std::regex_search(text, found, kDate))
-      return fmt::format("{} since {}-{}-{}", unit, found[2].str(), found[3].str(), found[4].str());
+      return TimeText{fmt::format("{} since {}-{}-{}", unit, found[2].str(), found[3].str(), found[4].str()), ""};
   }
   return std::nullopt;
+}
+
+/// A time unit that would do, for a unit that names no date; nothing if none is found.
+std::optional<TimeText> mended_time(const NcFile& file, const SurveyedVariable& variable) {
+  const VariableLayout layout = find_layout(file, variable.name, variable.select);
+  if (!layout.time || layout.time->type == NC_CHAR || layout.time->type == NC_STRING) return std::nullopt;
+  const Attributes attributes = file.attributes(*layout.time);
+  const std::string unit = lower(text_attribute(attributes, "units"));
+  if (const auto found = described_date(attributes, unit)) return found;
+  return written_dates(unit, file.doubles(*layout.time));
 }
 
 // ---- sampling -------------------------------------------------------------------------------------------------------
@@ -131,12 +139,15 @@ struct Sample {
   ValueCounts counts;
   std::size_t values = 0, steps = 0;
   double low = std::numeric_limits<double>::infinity(), high = -low;
+  CustomaryFills fills;
+
+  explicit Sample(const ValueRules& rules) : fills(rules.scale, rules.offset, rules.type == RawType::f32) {}
 };
 
 Sample take_sample(const ArchivePlan& plan) {
   const CellRange cells = sample_cells(plan);
   StepReader reader(plan);
-  Sample sample;
+  Sample sample(plan.files.front().rules);
   const std::size_t stored = plan.holders.size();
   const bool whole_maps = cells.count == plan.panel.geometry.cells();  // else each step is costly
   const std::size_t most = whole_maps ? kMostSteps : kFewestSteps;
@@ -147,6 +158,7 @@ Sample take_sample(const ArchivePlan& plan) {
          reader.read(holder.file, file_step(plan.files[holder.file], holder.row), cells, sample.counts)) {
       sample.low = std::fmin(sample.low, value);
       sample.high = std::fmax(sample.high, value);
+      sample.fills.add(value);
     }
     sample.values += cells.count;
     ++sample.steps;
@@ -154,10 +166,34 @@ Sample take_sample(const ArchivePlan& plan) {
   return sample;
 }
 
+void note_fills(const std::string& name, const CustomaryFills& fills, SurveyReport& report) {
+  const auto suspects = fills.suspects();
+  if (suspects.empty()) return;
+  std::vector<std::string> values, seen;
+  for (const auto& [value, count] : suspects) {
+    values.push_back(number_text(value));
+    seen.push_back(fmt::format("{} ({} times in the sample)", number_text(value), count));
+  }
+  const bool others = fills.low() <= fills.high();
+  const std::string rest = others ? fmt::format("the other values lie between {} and {}", human_number(fills.low()),
+                                                human_number(fills.high()))
+                                  : "there are no other values";
+  add_quirk(report, fmt::format("{}: {} looks like a mark of missing values that the file does not declare; {}. If it "
+                                "is one, add to [input] of the job: missing_values = [{}]",
+                                name, join(seen, ", "), rest, join(values, ", ")));
+}
+
+void note_all_missing(const std::string& name, std::size_t values, SurveyReport& report) {
+  add_quirk(report, fmt::format("{}: all {} sampled values are missing; there is nothing to analyse in them", name,
+                                grouped(values)));
+}
+
 void note_values(const ArchivePlan& plan, const Sample& sample, SurveyReport& report) {
   const std::string& name = plan.panel.variable;
   const ValueRules& rules = plan.files.front().rules;
   const auto count = [](std::size_t n) { return static_cast<double>(n); };
+  note_fills(name, sample.fills, report);
+  if (sample.low > sample.high) note_all_missing(name, sample.values, report);
   if (sample.counts.infinite > 0)
     add_quirk(report, fmt::format("{}: infinite values, taken as missing ({} of {} sampled)", name,
                                   sample.counts.infinite, sample.values));
@@ -218,13 +254,17 @@ void fill_in(const ArchivePlan& plan, SurveyedVariable& variable, SurveyReport& 
 
 // A time unit without its date stops every variable; if the date is found elsewhere, the survey goes on with it.
 bool mend(const NcFile& file, SurveyedVariable& variable, SurveyReport& report) {
-  const auto unit = mended_unit(file, variable);
-  if (!unit) return false;
+  const auto text = mended_time(file, variable);
+  if (!text) return false;
   InputRequest request = request_for(report, variable);
-  request.time = InputRequest::TimeMend{*unit, std::nullopt, std::nullopt};
-  report.mend_time = fmt::format("time = {{ unit = \"{}\" }}", *unit);
-  add_quirk(report, fmt::format("the time unit names no date; '{}' is read from its description", *unit));
-  fill_in(*plan_archive(request), variable, report);
+  request.time = InputRequest::TimeMend{text->units, std::nullopt, std::nullopt};
+  if (!text->calendar.empty()) request.time->calendar = text->calendar;
+  const auto plan = plan_archive(request);
+  report.mend_time = mend_line(*text);
+  add_quirk(report, fmt::format("the time unit names no date; the times are read as '{}', as their description or "
+                                "values suggest",
+                                text->units));
+  fill_in(*plan, variable, report);
   return true;
 }
 
@@ -238,14 +278,44 @@ void examine(const NcFile& file, SurveyedVariable& variable, SurveyReport& repor
     }
   } catch (const Error& problem) {
     variable.usable = false;
-    variable.why_not = problem.problem();
+    // Of several files, which ones it is about.
+    const bool several = report.files.size() > 1 && !problem.where().empty();
+    variable.why_not = several ? fmt::format("{} ({})", problem.problem(), problem.where()) : problem.problem();
     variable.to_do = problem.fix();
   }
 }
 
+std::vector<std::string> names_of(const std::vector<NcVariable>& variables) {
+  std::vector<std::string> names;
+  for (const NcVariable& one : variables) names.push_back(one.path);
+  return names;
+}
+
+std::string some_of(const std::vector<std::string>& names) {
+  constexpr std::size_t kMost = 4;
+  if (names.empty()) return "no data";
+  const std::size_t shown = std::min(names.size(), kMost);
+  return join(std::span(names).first(shown), ", ") + (shown < names.size() ? ", ..." : "");
+}
+
+// Refuses files of different archives: those that share no variable with the first one.
+void require_shared_variable(const NcFile& first, const std::vector<std::string>& names, const NcFile& other) {
+  const auto held = [&](const std::string& name) { return other.find(name).has_value(); };
+  if (names.empty() || std::any_of(names.begin(), names.end(), held)) return;
+  throw Error(ErrorKind::input,
+              fmt::format("these files do not belong together: {} has {}, {} has {}", first.path(), some_of(names),
+                          other.path(), some_of(names_of(data_variables(other)))),
+              "files: " + first.path() + " and " + other.path(), "survey the files of each archive by themselves");
+}
+
 void survey_netcdf(SurveyReport& report) {
-  for (const std::string& path : report.files) report.kinds.push_back(NcFile::open(path).kind());
   const NcFile first = NcFile::open(report.files.front());
+  const std::vector<std::string> names = names_of(data_variables(first));
+  for (const std::string& path : report.files) {
+    const NcFile file = NcFile::open(path);
+    report.kinds.push_back(file.kind());
+    require_shared_variable(first, names, file);
+  }
   note_bounds(first, report);
   for (const NcVariable& one : data_variables(first)) {
     SurveyedVariable variable;
@@ -279,6 +349,10 @@ void survey_panel(const std::string& sites, SurveyReport& report, const Log& log
   variable.missing_share = static_cast<double>(missing) / static_cast<double>(values.size());
   variable.sampled_steps = steps;
   for (const std::string& note : variable.panel.notes) add_quirk(report, note);
+  CustomaryFills fills(1, 0, false);
+  for (const double value : values) fills.add(value);
+  note_fills(variable.name, fills, report);
+  if (missing == std::ssize(values)) note_all_missing(variable.name, values.size(), report);
   if (sites.empty()) add_quirk(report, "the sites have no coordinates; name a file of them: sites = \"sites.csv\"");
   if (variable.units.empty()) add_quirk(report, "no unit is stated; add a line \"# unit: m3 s-1\" to the file");
   report.variables.push_back(std::move(variable));
@@ -288,6 +362,11 @@ void survey_panel(const std::string& sites, SurveyReport& report, const Log& log
 
 SurveyReport survey_files(const std::vector<std::string>& files, const std::string& sites, const Log& log) {
   if (files.empty()) throw Error(ErrorKind::usage, "no files are named", "", "name the files to look at");
+  for (const std::string& path : files) {
+    std::error_code unknown;  // told when the file is opened
+    if (!std::filesystem::exists(path, unknown) && !unknown)
+      throw Error(ErrorKind::input, "the file does not exist", "file: " + path, "correct its name");
+  }
   SurveyReport report;
   report.files = files;
   const auto panels = std::count_if(files.begin(), files.end(), is_csv_name);

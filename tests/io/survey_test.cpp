@@ -79,6 +79,47 @@ TEST(Survey, FindsTheDateThatATimeUnitLacks) {
   EXPECT_EQ(named(report, "pm10").panel.axis.label(1), "2020-01-31T01:00:00");
 }
 
+TEST(Survey, YearsAndWrittenDaysAreReadForWhatTheyAre) {
+  const Folder folder;
+  const auto surveyed = [&](const char* name, const std::string& units, const std::vector<double>& times) {
+    NcSample s(folder / name);
+    const int t = s.dim("time", times.size()), y = s.dim("lat", 2), x = s.dim("lon", 3);
+    s.coordinate("time", {t}, times, units);
+    s.coordinate("lat", {y}, {1, 2}, "degrees_north");
+    s.coordinate("lon", {x}, {1, 2, 3}, "degrees_east");
+    s.put(s.var("flow", NC_FLOAT, {t, y, x}), range(0, 1, 6 * times.size()));
+    return survey_files({s.close()}, "", {});
+  };
+  const SurveyReport years = surveyed("years.nc", "year", range(1950, 1, 20));
+  ASSERT_TRUE(named(years, "flow").usable) << named(years, "flow").why_not;
+  EXPECT_EQ(named(years, "flow").panel.axis.label(0), "1950-01-01");
+  EXPECT_EQ(named(years, "flow").panel.axis.label(19), "1969-01-01");
+  EXPECT_EQ(years.mend_time, "time = { unit = \"years since 0000-01-01\", calendar = \"proleptic_gregorian\" }");
+  const SurveyReport days = surveyed("days.nc", "", {19810130, 19810131, 19810201});
+  ASSERT_TRUE(named(days, "flow").usable) << named(days, "flow").why_not;
+  EXPECT_EQ(named(days, "flow").panel.axis.label(2), "1981-02-01");
+  EXPECT_EQ(days.mend_time, "time = { unit = \"day as %Y%m%d.%f\" }");
+  EXPECT_FALSE(named(surveyed("unknown.nc", "days", range(1950, 1, 20)), "flow").usable);  // may be days since ...
+}
+
+TEST(Survey, FilesOfDifferentArchivesAreNamed) {
+  const Folder folder;
+  std::vector<std::string> files;
+  for (const char* name : {"rain", "wind"}) {
+    NcSample s(folder / (std::string(name) + ".nc"));
+    const auto [t, y, x] = grid_axes(s, 2, "days since 2001-01-01");
+    s.put(s.var(name, NC_FLOAT, {t, y, x}), range(0, 1, 12));
+    files.push_back(s.close());
+  }
+  const std::string message = message_of([&] { static_cast<void>(survey_files(files, "", {})); });
+  EXPECT_TRUE(has(message, "these files do not belong together: " + files[0] + " has rain, " + files[1] + " has wind"));
+  EXPECT_TRUE(has(message, "by themselves"));
+  files[1] = folder / "absent.nc";
+  const std::string absent = message_of([&] { static_cast<void>(survey_files(files, "", {})); });
+  EXPECT_TRUE(has(absent, "does not exist"));
+  EXPECT_FALSE(has(absent, "job"));
+}
+
 TEST(Survey, SaysWhatIsOddAboutValues) {
   const Folder folder;
   NcSample s(folder / "a.nc");
@@ -97,6 +138,31 @@ TEST(Survey, SaysWhatIsOddAboutValues) {
   EXPECT_TRUE(quirk(report, "coulomb"));
   EXPECT_TRUE(quirk(report, "infinite values"));
   EXPECT_TRUE(quirk(report, "rejects nearly all values"));
+}
+
+// Which numbers mark missing values when nobody declares them is common practice, without a published source.
+TEST(Survey, CustomaryMarksOfMissingValuesAreToldWhenNotDeclared) {
+  const Folder folder;
+  NcSample s(folder / "a.nc");
+  const auto [t, y, x] = grid_axes(s, 2, "days since 2001-01-01");
+  s.put(s.var("rain", NC_FLOAT, {t, y, x}), {-999, 0, 3, 200, 5, 6, 7, 8, 9, -999, 11, 12});
+  s.put(s.var("sea", NC_FLOAT, {t, y, x}), {1e20, 1e20, -3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
+  s.put(s.var("elevation", NC_FLOAT, {t, y, x}), {-99, -300, -3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
+  const int packed = s.var("packed", NC_SHORT, {t, y, x});
+  s.numbers(packed, "scale_factor", NC_DOUBLE, {0.5});
+  s.put(packed, {-32768, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
+  const int declared = s.var("declared", NC_FLOAT, {t, y, x});
+  s.numbers(declared, "missing_value", NC_FLOAT, {-9999});
+  s.put(declared, {-9999, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
+  s.put(s.var("empty", NC_FLOAT, {t, y, x}), std::vector<double>(12, kNaN));
+  const SurveyReport report = survey_files({s.close()}, "", {});
+  EXPECT_TRUE(quirk(report, "rain: -999 (2 times in the sample) looks like"));
+  EXPECT_TRUE(quirk(report, "between 0 and 200. If it is one, add to [input] of the job: missing_values = [-999]"));
+  EXPECT_TRUE(quirk(report, "missing_values = [1e+20]"));
+  EXPECT_TRUE(quirk(report, "missing_values = [-16384]"));
+  EXPECT_FALSE(quirk(report, "elevation: -99"));
+  EXPECT_FALSE(quirk(report, "declared: -9999"));
+  EXPECT_TRUE(quirk(report, "empty: all 12 sampled values are missing"));
 }
 
 TEST(Survey, LongRecordIsSampledEvenlyFromItsFirstToItsLastStep) {
@@ -120,6 +186,8 @@ TEST(Survey, CsvPanelIsReadWhole) {
   EXPECT_EQ(report.variables[0].units, "m3 s-1");
   EXPECT_DOUBLE_EQ(report.variables[0].missing_share, 0.25);
   EXPECT_TRUE(quirk(report, "no coordinates"));
+  std::ofstream(folder / "marked.csv") << "date,Alder,Birch\n2001-01-01,1,-9999\n2001-01-02,2,5\n";
+  EXPECT_TRUE(quirk(survey_files({folder / "marked.csv"}, "", {}), "missing_values = [-9999]"));
 }
 
 }  // namespace
