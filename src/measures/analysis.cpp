@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 #include <numbers>
 
 #include "lagscape/stats/effective_size.h"
@@ -92,8 +93,11 @@ struct Analysis::Impl {
         partials(std::max<std::size_t>(1, orders) * kLanes),
         usable(std::max<std::size_t>(1, orders) * kLanes),
         prepare_scratch(chosen.prepare_design),
-        trend_scratch(chosen.trend_design),
-        pairs(kLanes, PairCounts(steps)) {}
+        trend_scratch(chosen.trend_design) {
+    pairs.reserve(kLanes);
+    for (std::size_t lane = 0; lane < kLanes; ++lane)
+      pairs.emplace_back(steps);  // copies would lose their reserved room
+  }
 
   const AnalysisSettings& settings;
   const KernelTable& kernels;
@@ -227,7 +231,8 @@ std::uint8_t Analysis::Impl::prepare(const double* tile, std::uint8_t lanes) noe
       cell.residual_sd = std::sqrt(fit.sum_squares[lane] / (m - fit.parameters[lane]));
       cell.share_season = fit.share_season[lane];
       cell.share_trend = fit.share_trend[lane];
-      cell.mean = settings.filter == Filter::none ? fit.mean[lane] : raw.sum[lane] / raw.count[lane];
+      const bool all_used = settings.filter == Filter::none && fit.dropped[lane] == 0;
+      cell.mean = all_used ? fit.mean[lane] : raw.sum[lane] / raw.count[lane];
       continue;
     }
     take(lanes, lane);
@@ -268,9 +273,11 @@ void Analysis::Impl::follow_lags(std::uint8_t lanes) noexcept {
     cell.lag1 = correlation[kLanes + lane];
     cell.e_folding = scan.e_folding() * unit;
     cell.zero_crossing = scan.zero_crossing() * unit;
-    cell.integral = scan.integral() / 2 * unit;
-    cell.geyer = scan.geyer_monotone() * unit;
-    cell.sokal = scan.sokal() * unit;
+    if (!std::isnan(cell.lag1)) {  // sums over no lag at all would look like estimates
+      cell.integral = scan.integral() / 2 * unit;
+      cell.geyer = scan.geyer_monotone() * unit;
+      cell.sokal = scan.sokal() * unit;
+    }
     if (scan.first_inside_limits() > 0)
       cell.first_inside_limits = static_cast<double>(scan.first_inside_limits()) * unit;
     if (!scan.complete()) flag(lane, kBeyondLagRange);
@@ -330,7 +337,7 @@ void Analysis::Impl::ljung_box(std::size_t lane) noexcept {
 }
 
 /// Durbin-Levinson on the biased autocorrelations. Gaps can make those impossible as a whole (a partial of magnitude 1
-/// or more): then on S_k/S_0, which is always possible, and the cell is told as having many gaps.
+/// or more): then on S_k/S_0, which is always possible.
 void Analysis::Impl::partial_cube(std::uint8_t lanes) noexcept {
   const std::size_t last = settings.cube_lags - 1;
   kernels.durbin_levinson(correlation.data(), last, partial_work.data(), partial.data());
@@ -358,7 +365,6 @@ void Analysis::Impl::partial_cube(std::uint8_t lanes) noexcept {
   kernels.durbin_levinson(replaced, last, partial_work.data(), again);
   for (std::size_t lane = 0; lane < kLanes; ++lane) {
     if (!has(impossible, lane)) continue;
-    flag(lane, kManyGaps);
     for (std::size_t lag = 1; lag <= last; ++lag) partial[lag * kLanes + lane] = again[lag * kLanes + lane];
   }
 }
@@ -370,11 +376,13 @@ void Analysis::Impl::fit_memory(std::size_t lane) noexcept {
   const auto n = static_cast<double>(pairs[lane].span());
   const auto& frequencies = settings.prepare_design.frequencies();
 
-  const double first[] = {cell.lag1};
-  const ArModel lag1 = bias_corrected(model_from_coefficients(first), m, frequencies);
-  cell.lag1_corrected = lag1.coefficient[0];
-  if (!std::isnan(cell.lag1)) cell.ar1_time = (1 + cell.lag1_corrected) / (1 - cell.lag1_corrected) * unit;
-  if (lag1.near_unit_root) flag(lane, kNearUnitRoot);
+  if (!std::isnan(cell.lag1)) {
+    const double first[] = {cell.lag1};
+    const ArModel lag1 = bias_corrected(model_from_coefficients(first), m, frequencies);
+    cell.lag1_corrected = lag1.coefficient[0];
+    cell.ar1_time = (1 + cell.lag1_corrected) / (1 - cell.lag1_corrected) * unit;
+    if (lag1.near_unit_root) flag(lane, kNearUnitRoot);
+  }
 
   std::array<double, kMaxOrder> k{}, terms{};
   for (std::size_t p = 0; p < orders; ++p) {
@@ -414,8 +422,9 @@ void Analysis::Impl::fit_memory(std::size_t lane) noexcept {
 /// degrees of freedom of season and trend given back.
 void Analysis::Impl::mean_limits(std::size_t lane) noexcept {
   CellResult& cell = results[lane];
+  constexpr double kFewestIndependent = 10;  // with fewer, limits by Student's t are too narrow to be shown
+  if (!(cell.effective_size >= kFewestIndependent)) return;
   const double m = fit.count[lane], degrees = cell.effective_size - 1;
-  if (!(degrees > 0)) return;
   const double square = fit.sum_squares[lane] / m * (m - 1) / (m - fit.parameters[lane]);
   const double half_width = settings.limits_quantile(degrees) * std::sqrt(square / degrees);
   cell.mean_low = cell.mean - half_width;
@@ -476,8 +485,12 @@ void Analysis::Impl::judge_trend(std::size_t lane, const LaneFit& from, double l
     if (tests[i].name == "ols") cell.p_independent = verdict.p;
     if (&tests[i] == settings.tests.front()) {
       cell.p = verdict.p;
-      cell.slope_low = (from.slope[lane] - verdict.half_width) * rate;
-      cell.slope_high = (from.slope[lane] + verdict.half_width) * rate;
+      const double half_width = verdict.half_width * rate;
+      if (half_width <
+          static_cast<double>(std::numeric_limits<float>::max())) {  // hardly any degrees of freedom: no limits
+        cell.slope_low = cell.slope - half_width;
+        cell.slope_high = cell.slope + half_width;
+      }
     }
     if (tests[i].name == "ols-neff") {
       if (std::isnan(verdict.standard_error)) flag(lane, kNearUnitRoot);

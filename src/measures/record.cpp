@@ -94,8 +94,8 @@ std::vector<Measure> record_measures() {
        .formula = "mean - t(n_eff - 1) sqrt(s^2 / (n_eff - 1)), s^2 = SSE/m (m-1)/(m-q)",
        .source = "Zwiers & von Storch 1995, J. Clim. 8:336 (Student's t with an effective size)",
        .cautions =
-           "Liberal where the effective size is below about 30 (measured coverage .925 to .95 at 95 %). Not given for "
-           "filtered series.",
+           "Liberal where the effective size is below about 30 (measured coverage .925 to .95 at 95 %); not given "
+           "where it is below 10, nor for filtered series.",
        .ancillary = "status",
        .value = [](const CellResult& cell) { return cell.mean_low; }},
       {.name = "mean_high",

@@ -23,11 +23,11 @@ constexpr std::array kStatusBits = {
               "The gaps leave fewer than two seasons with two values or more, or make the terms of the fit "
               "indistinguishable.",
               true},
-    StatusBit{kNearUnitRoot, "near_unit_root", "near unit root",
-              "Memory is so strong for this record that its fit is at the edge of stationarity: times and effective "
-              "sizes are lower "
-              "and upper bounds rather than estimates. A trend cannot be told from memory here.",
-              false},
+    StatusBit{
+        kNearUnitRoot, "near_unit_root", "near unit root",
+        "Memory is so strong for this record that its fit is at the edge of stationarity: times and effective sizes "
+        "are bounds rather than estimates, and trend tests are at their least reliable.",
+        false},
     StatusBit{kBeyondLagRange, "beyond_lag_range", "beyond lag range",
               "A crossing or sum was not reached within half the record, or within the lags that the gaps leave enough "
               "pairs for: "
@@ -38,8 +38,8 @@ constexpr std::array kStatusBits = {
               "poor guide.",
               false},
     StatusBit{kManyGaps, "many_gaps", "many gaps",
-              "More than a fifth of the steps are missing, or gaps leave the correlations inconsistent; estimates are "
-              "less certain.",
+              "More than a fifth of the steps are missing, or too few stretches without gaps are left for an "
+              "autoregression; estimates are less certain or missing.",
               false},
     StatusBit{kShortRecord, "short_record", "short record",
               "Less than ten years from the first to the last value: a trend over so short a time says little.", false},

@@ -46,20 +46,19 @@ std::vector<const Measure*> chosen_measures(const JobSpec& job) {
       if (named(job.output.cubes, measure.name)) chosen.push_back(&measure);
       continue;
     }
-    const bool needs_target = measure.name == "years_to_detect" && !job.trend.target;
-    const bool wanted =
-        named(job.output.maps, measure.name) ||
-        (!needs_target && (named(job.output.maps, "all") || named(job.output.maps, group_name(measure.group)) ||
-                           (measure.standard && named(job.output.maps, "standard"))));
-    // Further tests of the job show their p-values beside the first one's.
-    const bool further_test = std::any_of(job.trend.tests.begin() + 1, job.trend.tests.end(),
-                                          [&](const std::string& test) { return measure.name == test_map_name(test); });
-    const bool target_set = measure.name == "years_to_detect" && job.trend.target;
-    if (wanted || further_test || target_set) chosen.push_back(&measure);
-    if (named(job.output.maps, measure.name) && needs_target) {
+    const bool by_target = measure.name == "years_to_detect";
+    if (by_target && !job.trend.target) {
+      if (!named(job.output.maps, measure.name)) continue;
       throw Error(ErrorKind::job, "the map years_to_detect needs a trend to be detected", job.path,
                   "add target = NUMBER to [trend], in the variable's unit per year (or decade)");
     }
+    // Further tests of the job show their p-values beside the first one's.
+    const bool further_test = std::any_of(job.trend.tests.begin() + 1, job.trend.tests.end(),
+                                          [&](const std::string& test) { return measure.name == test_map_name(test); });
+    const bool wanted = named(job.output.maps, measure.name) || named(job.output.maps, "all") ||
+                        named(job.output.maps, group_name(measure.group)) ||
+                        (measure.standard && named(job.output.maps, "standard"));
+    if (wanted || by_target || further_test) chosen.push_back(&measure);
   }
   return chosen;
 }

@@ -153,6 +153,7 @@ class VariableRun {
       report_.write_seconds += seconds_since(clock);
     }
     band.reset();
+    for (const auto& worker : workers_) report_.values += worker->counts;
     finish(*sink);
     report_.wall_seconds = seconds_since(started);
     report_.cpu_seconds = cpu_seconds() - cpu;
@@ -161,47 +162,45 @@ class VariableRun {
   }
 
  private:
+  /// What a thread works with, made before any thread starts: running out of memory then is an ordinary exception.
+  struct Worker {
+    Worker(const AnalysisSettings& settings, std::size_t values, std::size_t layers_of_cube)
+        : analysis(settings), tiles(values), layers(layers_of_cube) {}
+    Analysis analysis;
+    AlignedVector<double> tiles;
+    std::vector<float> layers;
+    ValueCounts counts;
+  };
+
   void compute(const Band& band, BandMaps& maps, Clock::time_point started) {
     const CellRange cells = band.cells();
     const std::size_t steps = job_.plan.panel.axis.size(), block = job_.block_cells;
+    while (workers_.size() < static_cast<std::size_t>(job_.plan.threads)) {
+      workers_.push_back(std::make_unique<Worker>(*settings_, block * steps, maps.longest()));
+    }
     const auto blocks = static_cast<std::ptrdiff_t>((cells.count + block - 1) / block);
     std::atomic<std::size_t> done{cells.first};
     std::atomic<bool> stop{false};
     std::exception_ptr problem;
-#pragma omp parallel num_threads(job_.plan.threads)
-    {
-      // Exceptions must not leave a parallel region: the first one is kept and thrown after it.
-      try {
-        Analysis analysis(*settings_);
-        AlignedVector<double> tiles(block * steps);
-        std::vector<float> layers(maps.longest());
-        ValueCounts counts;
-#pragma omp for schedule(dynamic)
-        for (std::ptrdiff_t b = 0; b < blocks; ++b) {
-          if (stop) continue;
-          const std::size_t offset = static_cast<std::size_t>(b) * block, count = std::min(block, cells.count - offset);
-          band.gather(offset, count, kLanes, steps, tiles.data(), counts);
-          for (std::size_t first = 0; first < count; first += kLanes) {
-            const std::size_t lanes = std::min(kLanes, count - first);
-            const auto results = analysis.analyse(tiles.data() + first * steps, lanes);
-            for (std::size_t lane = 0; lane < lanes; ++lane)
-              keep(cells.first, offset + first + lane, results[lane], maps, layers);
-          }
-          done += count;
-          if (progress_ && omp_get_thread_num() == 0) {
-            try {
-              progress_(done, job_.plan.cells, seconds_since(started));
-            } catch (...) {  // how a caller stops a run
-              problem = std::current_exception();
-              stop = true;
-            }
+#pragma omp parallel for num_threads(job_.plan.threads) schedule(dynamic)
+    for (std::ptrdiff_t b = 0; b < blocks; ++b) {
+      if (stop) continue;
+      try {  // exceptions must not leave the loop: the first one is kept, ends the work, and is thrown after it
+        Worker& worker = *workers_[static_cast<std::size_t>(omp_get_thread_num())];
+        const std::size_t offset = static_cast<std::size_t>(b) * block, count = std::min(block, cells.count - offset);
+        band.gather(offset, count, kLanes, steps, worker.tiles.data(), worker.counts);
+        for (std::size_t first = 0; first < count; first += kLanes) {
+          const std::size_t lanes = std::min(kLanes, count - first);
+          const auto results = worker.analysis.analyse(worker.tiles.data() + first * steps, lanes);
+          for (std::size_t lane = 0; lane < lanes; ++lane) {
+            keep(cells.first, offset + first + lane, results[lane], maps, worker.layers);
           }
         }
-#pragma omp critical
-        report_.values += counts;
+        done += count;
+        if (progress_ && omp_get_thread_num() == 0) progress_(done, job_.plan.cells, seconds_since(started));
       } catch (...) {
 #pragma omp critical
-        problem = std::current_exception();
+        if (!problem) problem = std::current_exception();
         stop = true;
       }
     }
@@ -281,6 +280,7 @@ class VariableRun {
   const Progress& progress_;
   std::unique_ptr<AnalysisSettings> settings_;
   std::span<const unsigned char> excluded_;
+  std::vector<std::unique_ptr<Worker>> workers_;
   WholeMap whole_;
   RunReport report_;
 };

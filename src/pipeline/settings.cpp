@@ -126,7 +126,7 @@ void resolve_filter(const JobSpec& job, const TimeAxis& axis, ResolvedSettings& 
     out.told.push_back({"prepare.window", fmt::format("{} steps", out.filter_length), ""});
   }
   if (out.filter_length * 2 >= axis.size()) {
-    throw impossible(job, "prepare.window",
+    throw impossible(job, job.prepare.remove == RemoveRule::running_mean ? "prepare.window" : "prepare.remove",
                      fmt::format("{} steps are too long for a record of {} steps", out.filter_length, axis.size()),
                      "use a shorter window or another way of preparation");
   }

@@ -438,7 +438,9 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
     # the degrees of freedom of the fit; SSE/m where the mean alone is fitted.
     spread = fit.sse / m * (m - 1) / (m - fit.q)
     half = stats.t.ppf(0.5 + settings.confidence / 2, size - 1) * np.sqrt(spread / (size - 1))
-    out.update(mean=fit.mean, mean_low=fit.mean - half, mean_high=fit.mean + half)
+    out["mean"] = fit.mean
+    if size >= 10:  # methods: no limits are given for fewer than ten independent values
+        out.update(mean_low=fit.mean - half, mean_high=fit.mean + half)
     return at_bound
 
 
