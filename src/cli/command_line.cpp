@@ -47,6 +47,7 @@ class Commands {
     app_.set_help_flag("-h,--help", "show this help");
     app_.add_flag("--version", version_, "show version, compiler, netCDF library and usable threads");
     app_.allow_extras();
+    app_.require_subcommand(0, 1);  // later words are arguments, even if a command has the same name
     app_.footer(
         "Examples:\n"
         "  lagscape survey sample_grids/harrow_soil_wetness_*.nc\n"
@@ -105,7 +106,9 @@ class Commands {
         ->group("Output");
   }
   void json(CLI::App* sub, const std::string& what) {
-    sub->add_flag("--json", line_.json, fmt::format("print the {} as JSON (default: text)", what))->group("Output");
+    sub->add_flag("--json", line_.json,
+                  fmt::format("print the {} as JSON (default: text); errors stay text on stderr", what))
+        ->group("Output");
   }
   void survey();
   void plan();
@@ -165,15 +168,16 @@ void Commands::explain() {
   CLI::App* sub = command("explain", "Says what a map, status, job key, trend test or method means, with its source.",
                           "  lagscape explain\n"
                           "  lagscape explain decorrelation_time\n"
-                          "  lagscape explain prepare.min_share\n");
-  arguments(sub, "WORD", "what to explain (default: list all words)", false, false);
+                          "  lagscape explain prepare.min_share field.rate\n"
+                          "  lagscape explain plan\n");
+  arguments(sub, "WORD", "what to explain; a command shows its help (default: list all words)", true, false);
 }
 
 void Commands::forge() {
   CLI::App* sub = command("forge", "Makes a grid or panel whose memory and trend are known, and maps of that truth.",
                           "  lagscape forge jobs/forge_harrow_soil_wetness.toml --set output.folder=forged\n");
   arguments(sub, "RECIPE.toml", "recipe to follow", false);
-  set_option(sub, "recipe", "seed=2");
+  set_option(sub, "recipe", "seed=2 or 'patch[0].ar=[0.7]'");
   replace(sub, "existing files");
   quiet(sub, "notes");
 }
@@ -253,6 +257,16 @@ std::vector<std::string> command_names() {
   std::vector<std::string> names;
   for (const CLI::App* sub : commands.app().get_subcommands({})) names.push_back(sub->get_name());
   return names;
+}
+
+std::optional<std::string> command_help(const std::string& name) {
+  CommandLine line;
+  RawOptions raw;
+  Commands commands(line, raw);
+  for (const CLI::App* sub : commands.app().get_subcommands({})) {
+    if (sub->get_name() == name) return sub->help();
+  }
+  return std::nullopt;
 }
 
 CommandLine parse_command_line(int argc, const char* const* argv) {

@@ -9,7 +9,7 @@ namespace lagscape {
 /// A command line, understood and checked.
 struct CommandLine {
   std::string command;                 ///< "survey", "plan", "run", "explain", "forge"; "" when only `output` is wanted
-  std::vector<std::string> arguments;  ///< files, jobs, or the word to explain
+  std::vector<std::string> arguments;  ///< files, jobs, or the words to explain
   std::vector<std::string> overrides;  ///< --set KEY=VALUE
   std::string sites, write_job;        ///< of survey
   int threads = 0;                     ///< 0: all
@@ -23,5 +23,8 @@ struct CommandLine {
 
 /// Names of all commands, in the order of help.
 [[nodiscard]] std::vector<std::string> command_names();
+
+/// What `COMMAND --help` prints, or nothing if there is no such command.
+[[nodiscard]] std::optional<std::string> command_help(const std::string& name);
 
 }  // namespace lagscape

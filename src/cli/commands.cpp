@@ -4,6 +4,7 @@
 #include <unistd.h>
 
 #include <algorithm>
+#include <array>
 #include <csignal>
 #include <cstdio>
 #include <filesystem>
@@ -28,13 +29,26 @@ namespace fs = std::filesystem;
 
 volatile std::sig_atomic_t interrupted = 0;
 
-/// The first Ctrl-C asks the run to stop and tidy up; the second one ends the program at once.
+constexpr std::array kStopSignals = {SIGINT, SIGTERM, SIGHUP};
+
+/// The first signal asks the work to stop and tidy up; from then on any of them ends the program at once.
+void note_interrupt(int /*signal*/) {
+  interrupted = 1;
+  struct sigaction at_once {};
+  at_once.sa_handler = SIG_DFL;
+  for (const int signal : kStopSignals) sigaction(signal, &at_once, nullptr);
+}
+
+/// Signals that whoever started the program has switched off (nohup) stay off.
 void watch_for_interrupt() {
   struct sigaction action {};
-  action.sa_handler = [](int) { interrupted = 1; };
-  action.sa_flags = SA_RESTART | static_cast<int>(SA_RESETHAND);
-  sigaction(SIGINT, &action, nullptr);
-  sigaction(SIGTERM, &action, nullptr);
+  action.sa_handler = note_interrupt;
+  action.sa_flags = SA_RESTART;
+  for (const int signal : kStopSignals) {
+    struct sigaction before {};
+    sigaction(signal, nullptr, &before);
+    if (before.sa_handler != SIG_IGN) sigaction(signal, &action, nullptr);
+  }
 }
 
 void stop_if_interrupted() {
@@ -142,12 +156,26 @@ std::string run_command_words(const CommandLine& line) {
   return command + (line.replace ? " --replace" : "");
 }
 
+/// A run would refuse a result that exists already: said before it is asked for.
+void note_taken_names(JobPlan& plan, bool replace) {
+  std::vector<std::string> taken;
+  for (const std::string& file : plan.output_files) {
+    std::error_code ignored;
+    if (fs::exists(fs::symlink_status(file, ignored))) taken.push_back(file);
+  }
+  if (taken.empty()) return;
+  plan.notes.push_back(fmt::format("{} already; {}",
+                                   taken.size() == 1 ? "the result exists" : "these exist: " + join(taken, ", "),
+                                   replace ? "with --replace it is replaced" : "run needs --replace"));
+}
+
 void plan(const CommandLine& line) {
   ProgressLine none(false);
   const Log log = log_to_stderr(line.quiet, none);
   std::vector<JobPlan> plans;
   for (const JobSpec& job : read_jobs(line)) {
     for (JobPlan& made : plan_job(job, run_options(line, job.path), log)) {
+      note_taken_names(made, line.replace);
       if (!line.json) print((plans.empty() ? "" : "\n") + plan_text(made));
       plans.push_back(std::move(made));
     }
@@ -184,13 +212,27 @@ void run(const CommandLine& line) {
 }
 
 void forge(const CommandLine& line) {
+  watch_for_interrupt();
   ProgressLine none(false);
-  const ForgeReport report =
-      forge_recipe(line.arguments.front(), line.overrides, line.replace, log_to_stderr(line.quiet, none));
+  const ForgeReport report = forge_recipe(line.arguments.front(), line.overrides, line.replace,
+                                          log_to_stderr(line.quiet, none), stop_if_interrupted);
   std::string text = report.description;
   if (!text.empty() && text.back() != '\n') text += '\n';
   for (const std::string& file : report.files) text += fmt::format("wrote {}\n", file);
   print(text);
+}
+
+std::string explained(const std::string& word) {
+  if (auto help = command_help(word)) return *help;
+  return explain_text(word);
+}
+
+/// All words or, if one of them is unknown, none.
+void explain(const CommandLine& line) {
+  if (line.arguments.empty()) return print(explain_text(""));
+  std::vector<std::string> texts;
+  for (const std::string& word : line.arguments) texts.push_back(explained(word));
+  print(join(texts, "\n"));
 }
 
 }  // namespace
@@ -201,7 +243,7 @@ void run_command(const CommandLine& line) {
   if (line.command == "plan") return plan(line);
   if (line.command == "run") return run(line);
   if (line.command == "forge") return forge(line);
-  print(explain_text(line.arguments.empty() ? "" : line.arguments.front()));
+  explain(line);
 }
 
 }  // namespace lagscape

@@ -21,7 +21,7 @@ void write_sites(const Geometry& geometry, const std::string& path) {
 
 }  // namespace
 
-MissingCounts write_csv(const Recipe& recipe, const PartFiles& files) {
+MissingCounts write_csv(const Recipe& recipe, const PartFiles& files, const Checkpoint& check) {
   const Geometry& geometry = recipe.geometry;
   const ForgedVariable& variable = recipe.variables.front();
   Generator generator(recipe, 0, 0, geometry.cells());
@@ -31,6 +31,7 @@ MissingCounts write_csv(const Recipe& recipe, const PartFiles& files) {
     std::ofstream file(path, std::ios::binary);
     file << fmt::format("# unit: {}\ndate,{}\n", variable.units, fmt::join(geometry.site_names, ","));
     for (std::size_t t = piece.first; t < piece.first + piece.steps; ++t) {
+      check();
       generator.next(values);
       file << recipe.axis.label(t);
       for (const double value : values) {

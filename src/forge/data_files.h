@@ -1,5 +1,6 @@
 #pragma once
 #include <cstddef>
+#include <functional>
 #include <string>
 #include <vector>
 
@@ -18,11 +19,14 @@ struct TimePiece {
 /// Missing values by variable and cell, counted while the data are made.
 using MissingCounts = std::vector<std::vector<std::size_t>>;
 
+/// Called before each step that is made; may throw to end the work.
+using Checkpoint = std::function<void()>;
+
 /// Writes the data as NetCDF. Grids in maps are made step after step over all cells, so that memory does not grow with
 /// the record; grids in series are made in bands of whole chunks over the whole record.
-MissingCounts write_netcdf(const Recipe& recipe, FileFormat format, const PartFiles& files);
+MissingCounts write_netcdf(const Recipe& recipe, FileFormat format, const PartFiles& files, const Checkpoint& check);
 /// Writes a panel as wide CSV (first column the date, one column a site), and the file of its sites.
-MissingCounts write_csv(const Recipe& recipe, const PartFiles& files);
+MissingCounts write_csv(const Recipe& recipe, const PartFiles& files, const Checkpoint& check);
 /// Writes the truth of one variable as NetCDF maps of the same geometry.
 void write_truth(const Recipe& recipe, std::size_t variable, const std::vector<std::size_t>& missing,
                  const std::string& path);

@@ -75,7 +75,8 @@ std::string describe(const Recipe& recipe) {
 }  // namespace
 
 ForgeReport forge_recipe(const std::string& recipe_path, const std::vector<std::string>& overrides, bool replace,
-                         const Log& log) {
+                         const Log& log, const std::function<void()>& checkpoint) {
+  const std::function<void()> check = checkpoint ? checkpoint : [] {};
   const Recipe recipe = read_recipe(recipe_path, overrides);
   check_memory(recipe);
   PartFiles files(recipe.output.folder, file_names(recipe), replace,
@@ -84,11 +85,12 @@ ForgeReport forge_recipe(const std::string& recipe_path, const std::vector<std::
       fmt::format("making {} values", grouped(recipe.axis.size() * recipe.geometry.cells() * recipe.variables.size())));
   MissingCounts missing;
   for (const FileFormat format : recipe.output.formats) {
-    missing = format == FileFormat::csv ? write_csv(recipe, files) : write_netcdf(recipe, format, files);
+    missing = format == FileFormat::csv ? write_csv(recipe, files, check) : write_netcdf(recipe, format, files, check);
   }
   for (std::size_t v = 0; recipe.output.truth && v < recipe.variables.size(); ++v) {
     write_truth(recipe, v, missing[v], files.part(truth_name(recipe, v)));
   }
+  check();
   return {files.commit(), describe(recipe)};
 }
 

@@ -48,8 +48,8 @@ std::array<std::size_t, 3> chunk_sizes(const Recipe& recipe, std::size_t steps) 
 /// How the values of a run of cells go to disk.
 class NetcdfWriter {
  public:
-  NetcdfWriter(const Recipe& recipe, FileFormat format, const PartFiles& files)
-      : recipe_(recipe), format_(format), files_(files) {}
+  NetcdfWriter(const Recipe& recipe, FileFormat format, const PartFiles& files, const Checkpoint& check)
+      : recipe_(recipe), format_(format), files_(files), check_(check) {}
 
   MissingCounts write() {
     const std::vector<TimePiece> pieces = time_pieces(recipe_);
@@ -99,6 +99,7 @@ class NetcdfWriter {
   const Recipe& recipe_;
   FileFormat format_;
   const PartFiles& files_;
+  const Checkpoint& check_;
   std::vector<double> block_;  ///< steps of one block, time-major
 };
 
@@ -165,7 +166,10 @@ void NetcdfWriter::write_piece(NcFile& file, const TimePiece& piece, std::size_t
     const std::size_t steps = std::min(block_steps, piece.steps - step);
     block_.resize(steps * count);
     for (std::size_t v = 0; v < generators.size(); ++v) {
-      for (std::size_t t = 0; t < steps; ++t) generators[v].next(std::span(block_).subspan(t * count, count));
+      for (std::size_t t = 0; t < steps; ++t) {
+        check_();
+        generators[v].next(std::span(block_).subspan(t * count, count));
+      }
       put(file, recipe_.variables[v], step, steps, first, count);
     }
   }
@@ -209,8 +213,8 @@ void NetcdfWriter::put_as(NcFile& file, const ForgedVariable& variable, const st
 
 }  // namespace
 
-MissingCounts write_netcdf(const Recipe& recipe, FileFormat format, const PartFiles& files) {
-  return NetcdfWriter(recipe, format, files).write();
+MissingCounts write_netcdf(const Recipe& recipe, FileFormat format, const PartFiles& files, const Checkpoint& check) {
+  return NetcdfWriter(recipe, format, files, check).write();
 }
 
 }  // namespace lagscape

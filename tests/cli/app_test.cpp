@@ -55,6 +55,8 @@ TEST_F(App, HelpAndExplanationsGoToStdoutWithCodeZero) {
     EXPECT_EQ(answer.err, "");
   }
   EXPECT_EQ(call({"explain", "prepare.min_share"}).out, explain_text("prepare.min_share"));
+  EXPECT_EQ(call({"explain", "plan"}).out, call({"plan", "--help"}).out);
+  EXPECT_EQ(call({"explain", "field.rate", "season"}).out, explain_text("field.rate") + "\n" + explain_text("season"));
 }
 
 TEST_F(App, EveryKindOfMistakeHasItsExitCodeAndNothingOnStdout) {
@@ -62,6 +64,7 @@ TEST_F(App, EveryKindOfMistakeHasItsExitCodeAndNothingOnStdout) {
   const std::vector<std::pair<int, std::vector<std::string>>> calls = {
       {2, {"run"}},
       {2, {"explain", "nonsensical"}},
+      {2, {"explain", "plan", "nonsensical"}},
       {3, {"run", (folder_ / "none.toml").string()}},
       {3, {"plan", good, "--set", "trend.alpha=2"}},
       {4, {"plan", good}},
@@ -86,6 +89,26 @@ TEST_F(App, AllJobsAreCheckedBeforeTheFirstIsRun) {
   EXPECT_EQ(answer.code, 3);
   EXPECT_NE(answer.err.find("second.toml:5:8"), std::string::npos) << answer.err;
   EXPECT_NE(answer.err.find("third.toml:5:8"), std::string::npos) << answer.err;
+}
+
+TEST_F(App, PlanSaysThatTheResultExistsAlready) {
+  std::ofstream panel(folder_ / "flow.csv");
+  panel << "date,upper,lower\n";
+  for (int month = 0; month < 60; ++month)
+    panel << 1981 + month / 12 << (month % 12 < 9 ? "-0" : "-") << month % 12 + 1 << "-15,1,2\n";
+  panel.close();
+  const std::string path = (folder_ / "flow.toml").string();
+  std::ofstream(path) << "[input]\nfiles = 'flow.csv'\nvariable = 'flow'\n[output]\nfile = 'result.nc'\n";
+  const auto notes = [&](std::vector<std::string> arguments) {
+    arguments.insert(arguments.begin(), {"plan", path, "--json"});
+    const Answer answer = call(arguments);
+    EXPECT_EQ(answer.code, 0) << answer.err;
+    return nlohmann::json::parse(answer.out)["plans"][0]["notes"].dump();
+  };
+  EXPECT_EQ(notes({}).find("already"), std::string::npos) << notes({});
+  std::ofstream(folder_ / "result.nc") << "an earlier result";
+  EXPECT_NE(notes({}).find("the result exists already; run needs --replace"), std::string::npos) << notes({});
+  EXPECT_NE(notes({"--replace"}).find("with --replace it is replaced"), std::string::npos) << notes({"--replace"});
 }
 
 TEST_F(App, TwoJobsMustNotWriteTheSameResult) {

@@ -7,6 +7,7 @@
 #include <cstdlib>
 #include <filesystem>
 #include <fstream>
+#include <functional>
 #include <iterator>
 #include <limits>
 
@@ -85,7 +86,7 @@ class Forge : public ::testing::Test {
   ForgeReport forge(const RecipeText& text, bool replace = false) {
     const std::string path = folder_ + "/recipe.toml";
     std::ofstream(path) << text.text();
-    return forge_recipe(path, {}, replace, {});
+    return forge_recipe(path, {}, replace, {}, checkpoint_);
   }
   [[nodiscard]] std::string made(const std::string& name) const { return folder_ + "/out/" + name; }
   [[nodiscard]] std::size_t files_made() const {
@@ -94,6 +95,7 @@ class Forge : public ::testing::Test {
                : 0;
   }
   std::string folder_;
+  std::function<void()> checkpoint_;
 };
 
 RecipeText patchy() {
@@ -102,6 +104,24 @@ RecipeText patchy() {
       "trend = 0.1\ngaps = { random = 0.1 }\n[[patch]]\nname = \"long\"\nrows = [2, 3]\nd = 0.3\n[[lake]]\ncircle = "
       "[4, 4, 1]\n";
   return text;
+}
+
+TEST_F(Forge, IsStoppedAtAnyStepByItsCheckpointAndLeavesNothing) {
+  RecipeText text = patchy();
+  std::size_t calls = 0, last = 0;
+  checkpoint_ = [&] {
+    if (++calls == last) throw Error(ErrorKind::interrupted, "stopped");
+  };
+  forge(text);
+  const std::size_t all = calls;
+  EXPECT_GE(all, 120U);  // one a step
+  fs::remove_all(folder_ + "/out");
+  for (const std::size_t stop : {std::size_t{1}, all / 2, all}) {
+    calls = 0;
+    last = stop;
+    EXPECT_THROW(forge(text), Error) << stop;
+    EXPECT_FALSE(fs::exists(folder_ + "/out")) << stop;
+  }
 }
 
 TEST_F(Forge, EveryFormatLayoutAndChunkHoldsTheSameValues) {
@@ -234,6 +254,16 @@ RecipeText panel() {
   text.patches += "gaps = { random = 0.1 }\n[[patch]]\nname = \"b\"\nsites = [\"Cold Spring\"]\nmean = 3\n";
   text.output += "format = [\"netcdf4\", \"csv\"]\ndecimals = 3\n";
   return text;
+}
+
+TEST_F(Forge, IsStoppedWhileItWritesCsv) {
+  std::size_t calls = 0;
+  checkpoint_ = [&] {
+    if (++calls == 600) throw Error(ErrorKind::interrupted, "stopped");  // 400 steps of NetCDF come first
+  };
+  EXPECT_THROW(forge(panel()), Error);
+  EXPECT_EQ(calls, 600U);
+  EXPECT_FALSE(fs::exists(folder_ + "/out"));
 }
 
 TEST_F(Forge, APanelIsTheSameAsNetcdfInEitherOrderAndAsCsv) {

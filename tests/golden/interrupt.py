@@ -1,8 +1,9 @@
-"""Ctrl-C while jobs run ends with exit code 130 and leaves no result; on a terminal the progress line shows and goes away.
+"""Ctrl-C, a request to end or a closed terminal while jobs run or data are forged end with exit code 130 and leave no result; on a terminal the progress line shows and goes away.
 
 usage: interrupt.py PROGRAM SOURCE_FOLDER
 
-The job is read from a named pipe, so that the signal comes for certain while the program works.
+Jobs are read from a named pipe, so that the signal comes for certain while the program works; a forge is stopped when its
+hidden file is seen.
 """
 import os
 import pathlib
@@ -27,23 +28,83 @@ def waits_for_pipe(process):
     return pathlib.Path(f"/proc/{process.pid}/stat").read_text().rsplit(")", 1)[1].split()[0] == "S"
 
 
-with tempfile.TemporaryDirectory() as folder:
-    pipe = pathlib.Path(folder) / "job.toml"
-    os.mkfifo(pipe)
-    process = subprocess.Popen([program, "run", pipe], cwd=folder, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
-    for _ in range(300):
-        time.sleep(0.1)
-        if waits_for_pipe(process):
-            break
-    time.sleep(0.5)
-    process.send_signal(signal.SIGINT)
-    with open(pipe, "w") as end:
-        end.write(job)
+recipe = """[time]
+start = "1981-01-01"
+steps = 100000
+step = "P1D"
+[grid]
+kind = "latlon"
+rows = 200
+cols = 200
+lat = [50, 45]
+lon = [0, 5]
+[[variable]]
+name = "wetness"
+units = "1"
+[[patch]]
+name = "loam"
+ar = [0.6]
+[output]
+folder = "out"
+name = "made"
+"""
+SIGNALS = (signal.SIGINT, signal.SIGTERM, signal.SIGHUP)
+
+
+def start(folder, *words):
+    """The program, stopped by signals even where whoever runs the tests has switched them off."""
+    def heed_signals():
+        for each in SIGNALS:
+            signal.signal(each, signal.SIG_DFL)
+    return subprocess.Popen([program, *words], cwd=folder, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True,
+                            preexec_fn=heed_signals)
+
+
+def until(condition):
+    for _ in range(600):
+        if condition():
+            return
+        time.sleep(0.05)
+    sys.exit("the program did not come to where it was to be stopped")
+
+
+def ends_as_interrupted(process, folder, given):
     out, err = process.communicate(timeout=120)
     assert process.returncode == 130, (process.returncode, err)
-    assert out == "" and err.startswith("error: interrupted"), (out, err)
-    left = [name for name in os.listdir(folder) if name != "job.toml"]
-    assert not left, left
+    assert out == "" and err.splitlines()[-1].startswith("error: interrupted"), (out, err)
+    assert os.listdir(folder) == [given], os.listdir(folder)
+
+
+for each in SIGNALS:
+    with tempfile.TemporaryDirectory() as folder:
+        pipe = pathlib.Path(folder) / "job.toml"
+        os.mkfifo(pipe)
+        process = start(folder, "run", pipe)
+        until(lambda: waits_for_pipe(process))
+        time.sleep(0.5)
+        process.send_signal(each)
+        with open(pipe, "w") as end:
+            end.write(job)
+        ends_as_interrupted(process, folder, "job.toml")
+
+    with tempfile.TemporaryDirectory() as folder:
+        (pathlib.Path(folder) / "recipe.toml").write_text(recipe)
+        process = start(folder, "forge", "recipe.toml")
+        until(lambda: list(pathlib.Path(folder).glob("out/.*.part")))
+        process.send_signal(each)
+        ends_as_interrupted(process, folder, "recipe.toml")
+
+with tempfile.TemporaryDirectory() as folder:  # a second signal, of any kind, does not wait for a tidy end
+    pipe = pathlib.Path(folder) / "recipe.toml"
+    os.mkfifo(pipe)
+    process = start(folder, "forge", pipe)
+    until(lambda: waits_for_pipe(process))
+    time.sleep(0.5)
+    process.send_signal(signal.SIGINT)
+    time.sleep(0.2)
+    process.send_signal(signal.SIGTERM)
+    process.communicate(timeout=60)
+    assert process.returncode == -signal.SIGTERM, process.returncode
 
 with tempfile.TemporaryDirectory() as folder:
     path = pathlib.Path(folder) / "job.toml"
