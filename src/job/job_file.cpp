@@ -140,13 +140,7 @@ class JobReader {
 void JobReader::refuse_unknown() {
   std::vector<std::string> known;
   for (const JobOption& option : job_options()) known.emplace_back(option.key);
-  for (const std::string_view later : later_options()) {
-    const std::string key(later);
-    known.push_back(key);
-    if (toml_.has(key))
-      toml_.problem(key, fmt::format("{}: a later version will read this key; take it out for now", name_of(key)));
-  }
-  toml_.refuse_unknown(known);
+  toml_.refuse_unknown(known, {later_options().begin(), later_options().end()});
 }
 
 std::optional<std::string> JobReader::existing_file(const std::string& key) {

@@ -62,8 +62,10 @@ constexpr std::array kOptions = {
     JobOption{"input.time.step", "duration", "", "", kFree, "",
               "Mends a broken time axis: the time step, such as \"P1M\"."},
 
-    JobOption{"prepare.season", "choice", "auto", "auto | none | calendar | harmonics", kFree, "",
-              "The season to take out. auto: calendar months for monthly or longer steps, harmonics for shorter ones."},
+    JobOption{
+        "prepare.season", "choice", "auto", "auto | none | calendar | harmonics", kFree, "",
+        "The season to take out. auto: calendar months for monthly or longer steps, harmonics for shorter ones, none "
+        "for a record shorter than two years."},
     JobOption{"prepare.harmonics",
               "whole number",
               "4",
@@ -91,14 +93,15 @@ constexpr std::array kOptions = {
               "",
               {0, 1},
               "share of the steps",
-              "Cells with a smaller share of valid values have no estimates."},
+              "Cells with a smaller share of valid values have no estimates. By default the share is counted between a "
+              "cell's own first and last value; see prepare.share_of."},
     JobOption{"prepare.share_of", "choice", "span", "span | period", kFree, "",
               "What min_share refers to: the steps between a cell's first and last value, or the whole period."},
     JobOption{"prepare.min_count",
               "whole number",
               "30",
               "",
-              {3, kInfinity},
+              {12, kInfinity},
               "values",
               "Cells with fewer valid values have no estimates."},
 
@@ -109,8 +112,8 @@ constexpr std::array kOptions = {
         "",
         {1, kInfinity},
         "steps",
-        "Longest lag of the cubes. auto: a quarter of the record at most; at least 24 monthly steps, a year of daily "
-        "ones, 10 log10(n). Estimates do not depend on it."},
+        "Longest lag of the cubes. auto: 10 log10(n) steps, but at least 24 monthly steps or a year of daily ones, and "
+        "never more than a quarter of the record. Estimates do not depend on it."},
     JobOption{"memory.confidence", "number", "0.95", "", {0.5, 1, true}, "", "Confidence of all limits."},
     JobOption{"memory.limits", "choice", "bartlett", "bartlett | independent", kFree, "",
               "Limits of the autocorrelation: Bartlett's, which allow for the memory at shorter lags, or those of an "

@@ -124,6 +124,25 @@ toml::table parse_toml(const std::string& text, const std::string& name) {
   }
 }
 
+/// All of a file. Data given by mistake are told as what they are, by the first bytes of NetCDF and HDF5.
+std::string read_text(const std::string& path) {
+  std::error_code ignored;
+  std::ifstream file(path, std::ios::binary);
+  if (!file && !std::filesystem::exists(path, ignored))
+    throw Error(ErrorKind::job, "this file does not exist", path, "give the path of a TOML file");
+  if (std::filesystem::is_directory(path, ignored))
+    throw Error(ErrorKind::job, "this is a folder, not a TOML file", path, "give the path of a TOML file in it");
+  if (!file) throw Error(ErrorKind::job, "this file cannot be read", path, "give a TOML file that you may read");
+  std::string text(4, '\0');
+  file.read(text.data(), 4);
+  text.resize(static_cast<std::size_t>(file.gcount()));
+  if (text == "CDF\1" || text == "CDF\2" || text == "CDF\5" || text == "\211HDF") {
+    throw Error(ErrorKind::job, "this looks like a NetCDF file, expected a TOML file", path,
+                "'lagscape survey FILE --write-job job.toml' writes a job for a data file");
+  }
+  return text.append(std::istreambuf_iterator<char>(file), {});
+}
+
 /// The value of an override: TOML, or else the bare text. `values` owns the node.
 const toml::node* parse_value(const std::string& text, toml::table& values) {
   try {
@@ -187,9 +206,11 @@ struct TomlReader::Impl {
 
   void apply(const std::string& option);
   bool insert(const std::string& key, const toml::node& value);
-  void refuse_unknown(const toml::table& table, const std::string& path, const std::vector<std::string>& known);
+  [[nodiscard]] std::string misplaced_words(const std::string& key) const;
+  void refuse_unknown(const toml::table& table, const std::string& path, const std::vector<std::string>& known,
+                      const std::vector<std::string>& later);
   void check_node(const std::string& path, const toml::key& key, const toml::node& node,
-                  const std::vector<std::string>& known);
+                  const std::vector<std::string>& known, const std::vector<std::string>& later);
   [[nodiscard]] std::string unknown_words(const std::string& path, const std::string& name,
                                           const std::vector<std::string>& known) const;
 };
@@ -210,6 +231,22 @@ bool TomlReader::Impl::insert(const std::string& key, const toml::node& value) {
   return true;
 }
 
+/// Why an override finds no table; how elements of a list are written if the key leads through one.
+std::string TomlReader::Impl::misplaced_words(const std::string& key) const {
+  std::string list;
+  for (const std::string& part : split(parent_of(key), '.')) {
+    list = joined(list, split_index(part).first);
+    const toml::node* node = find_node(root, list);
+    if (node == nullptr || !node->is_array() || node->as_array()->empty()) continue;
+    const std::size_t last = node->as_array()->size() - 1;
+    const std::string elements =
+        last == 0 ? fmt::format("is {}[0]", list) : fmt::format("are {}[0] to {}[{}]", list, list, last);
+    return fmt::format("'{}' is a list, whose {} {}: write {}[0].{}", list, last == 0 ? "only element" : "elements",
+                       elements, list, last_part(key));
+  }
+  return fmt::format("there is no table '{}' to put it into", parent_of(key));
+}
+
 void TomlReader::Impl::apply(const std::string& option) {
   const std::size_t equals = option.find('=');
   const std::string key(trim(option.substr(0, equals)));
@@ -221,7 +258,7 @@ void TomlReader::Impl::apply(const std::string& option) {
   overrides.push_back({key, option.substr(equals + 1)});
   toml::table owner;
   const toml::node* value = parse_value(overrides.back().value, owner);
-  if (!insert(key, *value)) note(key, fmt::format("there is no table '{}' to put it into", parent_of(key)));
+  if (!insert(key, *value)) note(key, misplaced_words(key));
 }
 
 TomlReader::TomlReader(std::unique_ptr<Impl> impl) : impl_(std::move(impl)) {}
@@ -239,13 +276,7 @@ TomlReader TomlReader::from_text(const std::string& text, const std::string& nam
 }
 
 TomlReader TomlReader::from_file(const std::string& path, const std::vector<std::string>& overrides) {
-  std::error_code ignored;
-  std::ifstream file(path, std::ios::binary);
-  if (!file || std::filesystem::is_directory(path, ignored)) {
-    throw Error(ErrorKind::job, "this file cannot be read", path,
-                "give the path of a TOML file that exists and that you may read");
-  }
-  const std::string text{std::istreambuf_iterator<char>(file), std::istreambuf_iterator<char>()};
+  const std::string text = read_text(path);
   TomlReader reader = from_text(text, path, overrides);
   const std::filesystem::path folder = std::filesystem::path(path).parent_path();
   reader.impl_->folder = folder.empty() ? "." : folder.string();
@@ -388,10 +419,14 @@ std::string TomlReader::Impl::unknown_words(const std::string& path, const std::
 }
 
 void TomlReader::Impl::check_node(const std::string& path, const toml::key& key, const toml::node& node,
-                                  const std::vector<std::string>& known) {
+                                  const std::vector<std::string>& known, const std::vector<std::string>& later) {
   const std::string name(key.str());
   const std::string full = joined(path, name);
   const std::string pattern = without_indices(full);
+  if (std::find(later.begin(), later.end(), pattern) != later.end()) {
+    return note(full, key.source().begin,
+                fmt::format("{}: a later version will read this key; take it out for now", name));
+  }
   const auto any_starts = [&](const std::string& head) {
     return std::any_of(known.begin(), known.end(), [&](const std::string& k) { return starts_with(k, head); });
   };
@@ -399,10 +434,10 @@ void TomlReader::Impl::check_node(const std::string& path, const toml::key& key,
   const bool table = any_starts(pattern + ".");
   const bool tables = any_starts(pattern + "[].");
   if (!exact && !table && !tables) return note(full, key.source().begin, unknown_words(path, name, known));
-  if (table && node.is_table()) return refuse_unknown(*node.as_table(), full, known);
+  if (table && node.is_table()) return refuse_unknown(*node.as_table(), full, known, later);
   if (tables && node.is_array_of_tables()) {
     for (std::size_t i = 0; i < node.as_array()->size(); ++i) {
-      refuse_unknown(*node.as_array()->get(i)->as_table(), fmt::format("{}[{}]", full, i), known);
+      refuse_unknown(*node.as_array()->get(i)->as_table(), fmt::format("{}[{}]", full, i), known, later);
     }
     return;
   }
@@ -412,12 +447,12 @@ void TomlReader::Impl::check_node(const std::string& path, const toml::key& key,
 }
 
 void TomlReader::Impl::refuse_unknown(const toml::table& table, const std::string& path,
-                                      const std::vector<std::string>& known) {
-  for (const auto& [key, node] : table) check_node(path, key, node, known);
+                                      const std::vector<std::string>& known, const std::vector<std::string>& later) {
+  for (const auto& [key, node] : table) check_node(path, key, node, known, later);
 }
 
-void TomlReader::refuse_unknown(const std::vector<std::string>& known) {
-  impl_->refuse_unknown(impl_->root, "", known);
+void TomlReader::refuse_unknown(const std::vector<std::string>& known, const std::vector<std::string>& later) {
+  impl_->refuse_unknown(impl_->root, "", known, later);
 }
 
 void TomlReader::finish() const {

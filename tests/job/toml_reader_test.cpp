@@ -123,6 +123,27 @@ TEST(TomlReader, ProblemsOfOverridesNameTheOption) {
             "  --set nothing: expected KEY=VALUE, such as field.rate=0.05");
 }
 
+TEST(TomlReader, AnOverrideThatLeadsThroughAListIsToldHowElementsAreWritten) {
+  auto toml = reader("[[patch]]\nar = [0.5]\n[[patch]]\nar = [0.6]\n[[lake]]\nrows = [1, 2]\n",
+                     {"patch.0.ar=[0.9]", "patch[2].ar=[0.9]", "patch.ar=[0.9]", "lake.rows=[1, 1]"});
+  const std::string elements = "'patch' is a list, whose elements are patch[0] to patch[1]: write patch[0].ar\n";
+  EXPECT_EQ(problems(toml),
+            "4 problems in a.toml\n  --set patch.0.ar: " + elements + "  --set patch[2].ar: " + elements +
+                "  --set patch.ar: " + elements +
+                "  --set lake.rows: 'lake' is a list, whose only element is lake[0]: write lake[0].rows");
+}
+
+TEST(TomlReader, KeysOfALaterVersionAreToldAsSuchAndNeverOffered) {
+  auto toml = reader("later = 1\nlatex = 2\n[t]\nnew = { a = 1 }\nzzz = 2\n");
+  toml.refuse_unknown({"title", "t.file"}, {"later", "t.new"});
+  EXPECT_EQ(problems(toml),
+            "4 problems in a.toml\n"
+            "  a.toml:1:1: later: a later version will read this key; take it out for now\n"
+            "  a.toml:2:1: unknown key 'latex'; known here: t, title\n"
+            "  a.toml:4:1: new: a later version will read this key; take it out for now\n"
+            "  a.toml:5:1: unknown key 'zzz' in [t]; known here: file");
+}
+
 TEST(TomlReader, AProblemOfAnAbsentKeyIsPlacedAtItsTable) {
   auto toml = reader("x = 1\n\n[input]\nvariable = 'v'\n");
   toml.problem("input.files", "input.files is missing");
@@ -155,9 +176,36 @@ TEST(TomlReader, SyntaxErrorsNameThePlace) {
   }
 }
 
+std::string refusal(const std::string& path) {
+  try {
+    (void)TomlReader::from_file(path);
+  } catch (const Error& error) {
+    EXPECT_EQ(error.kind(), ErrorKind::job);
+    EXPECT_EQ(error.where().substr(0, path.size()), path);
+    EXPECT_NE(error.fix(), "");
+    return error.problem();
+  }
+  return "accepted";
+}
+
 TEST(TomlReader, FilesThatCannotBeReadAreRefused) {
-  EXPECT_THROW((void)TomlReader::from_file("no_such_folder/no_such.toml"), Error);
-  EXPECT_THROW((void)TomlReader::from_file("."), Error);
+  EXPECT_EQ(refusal("no_such_folder/no_such.toml"), "this file does not exist");
+  EXPECT_EQ(refusal("."), "this is a folder, not a TOML file");
+}
+
+// First bytes: NetCDF User's Guide, appendix "File Format Specifications"; HDF5 File Format Specification 3.0, II.A.
+TEST(TomlReader, DataGivenInPlaceOfAJobAreToldAsSuch) {
+  const std::string path =
+      (std::filesystem::path(testing::TempDir()) / ("lagscape_toml_data_" + std::to_string(getpid()))).string();
+  for (const char* head : {"CDF\1", "CDF\2", "CDF\5", "\211HDF\r\n\032\n"}) {
+    std::ofstream(path, std::ios::binary) << head << "some more";
+    EXPECT_EQ(refusal(path), "this looks like a NetCDF file, expected a TOML file");
+  }
+  std::ofstream(path, std::ios::binary) << "CDF = 1\n";
+  EXPECT_EQ(refusal(path), "accepted");
+  std::ofstream(path, std::ios::binary) << "a";
+  EXPECT_EQ(refusal(path).substr(0, 15), "not valid TOML:");
+  std::filesystem::remove(path);
 }
 
 TEST(TomlReader, FolderIsThatOfTheFile) {

@@ -40,7 +40,8 @@ class TomlReader {
   /// Notes a problem at the key's place (or at its table's when the key is absent).
   void problem(const std::string& key, const std::string& text);
   /// Notes every key that is not in `known` ("input.files", "patch[].ar" for arrays of tables), with the nearest name.
-  void refuse_unknown(const std::vector<std::string>& known);
+  /// Those in `later` are noted as keys that a later version will read; they are never offered.
+  void refuse_unknown(const std::vector<std::string>& known, const std::vector<std::string>& later = {});
   /// Throws Error{job} listing all problems, in order of place, if there are any.
   void finish() const;
   [[nodiscard]] const std::string& source_text() const;
