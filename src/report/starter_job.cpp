@@ -128,7 +128,8 @@ std::string variable_lines(const SurveyReport& report, const SurveyedVariable& v
   for (const SurveyedVariable& other : report.variables) {
     if (other.usable && other.name != variable.name) others.push_back(other.name);
   }
-  std::string out = others.empty() ? "" : comment(fmt::format("There are also: {}.", join(others, ", ")));
+  std::string out =
+      others.empty() ? "" : comment(fmt::format("There are also: {}. A list stands for several.", join(others, ", ")));
   return out + fmt::format("variable = {}\n", toml_text(variable.name));
 }
 
@@ -184,7 +185,10 @@ std::string starter_job(const SurveyReport& report, const std::string& path, con
   out += table("memory", {"max_lag", "confidence", "order"});
   out += table("trend", {"tests", "alpha", "per"});
   out += table("field", {"control", "rate"});
-  out += "\n[output]\n" + comment("The result; its folder is made when needed.");
+  const bool others = std::count_if(report.variables.begin(), report.variables.end(),
+                                    [](const SurveyedVariable& one) { return one.usable; }) > 1;
+  out += "\n[output]\n" + comment(fmt::format("The result; its folder is made when needed.{}",
+                                              others ? " For a list of variables, put {variable} into the name." : ""));
   const std::string result =
       fmt::format("{}/{}.nc", result_folder(report.files, folder), fs::path(path).stem().string());
   out += fmt::format("file = {}\n", toml_text(result));

@@ -33,9 +33,8 @@ std::string files_text(const SurveyReport& report) {
 
 std::string missing_words(const SurveyedVariable& variable) {
   if (variable.missing_share < 0) return "not looked at";
-  const double share = 100 * variable.missing_share;
-  const std::string amount = share > 0 && share < 0.1 ? "less than 0.1" : human_number(share, 2);
-  return fmt::format("{} % of the values in {}", amount, counted(variable.sampled_steps, "sampled step"));
+  return fmt::format("{} of the values in {}", percent(variable.missing_share),
+                     counted(variable.sampled_steps, "sampled step"));
 }
 
 std::string usable_text(const SurveyedVariable& variable) {

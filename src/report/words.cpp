@@ -21,11 +21,15 @@ std::string figure(double value) {
 }
 
 std::string percent(std::size_t part, std::size_t whole) {
-  if (whole == 0) return "-";
-  const double share = 100 * static_cast<double>(part) / static_cast<double>(whole);
-  if (part > 0 && share < 0.1) return "less than 0.1 %";
-  if (part < whole && share > 99.9) return "more than 99.9 %";
-  return share < 9.95 && part > 0 ? fmt::format("{:.1f} %", share) : fmt::format("{:.0f} %", share);
+  return whole == 0 ? "-" : percent(static_cast<double>(part) / static_cast<double>(whole));
+}
+
+std::string percent(double share) {
+  const double amount = 100 * share;
+  if (amount > 0 && amount < 0.1) return "less than 0.1 %";
+  if (amount < 100 && amount > 99.9) return "more than 99.9 %";
+  const bool near_an_end = (amount > 0 && amount < 9.95) || (amount >= 99.5 && amount < 100);
+  return fmt::format("{:.{}f} %", amount, near_an_end ? 1 : 0);
 }
 
 std::string variable_words(const Panel& panel) {

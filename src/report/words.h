@@ -19,6 +19,8 @@ constexpr std::size_t kReportWidth = 80;
 [[nodiscard]] std::string figure(double value);
 /// "12 %", "0.4 %", "less than 0.1 %"; whole of 0 gives "-".
 [[nodiscard]] std::string percent(std::size_t part, std::size_t whole);
+/// The same of a share, 0 to 1; only none is "0 %" and only all is "100 %".
+[[nodiscard]] std::string percent(double share);
 /// "soil wetness (m3 m-3)": the long name where there is one.
 [[nodiscard]] std::string variable_words(const Panel& panel);
 /// "480 monthly steps, 1981-01-15 to 2020-12-15 (40 years), standard calendar; 3 of them are in no file".

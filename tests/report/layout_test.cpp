@@ -54,6 +54,12 @@ TEST(Words, SharesNeverRoundToNothingOrToAll) {
   EXPECT_EQ(percent(1, 100000), "less than 0.1 %");
   EXPECT_EQ(percent(99999, 100000), "more than 99.9 %");
   EXPECT_EQ(percent(10, 10), "100 %");
+  EXPECT_EQ(percent(996, 1000), "99.6 %");  // not all, so not 100 %
+  EXPECT_EQ(percent(99, 100), "99 %");
+  EXPECT_EQ(percent(1.0), "100 %");
+  EXPECT_EQ(percent(0.998), "99.8 %");
+  EXPECT_EQ(percent(0.9999), "more than 99.9 %");
+  EXPECT_EQ(percent(0.0), "0 %");
   EXPECT_EQ(percent(3, 100), "3.0 %");
   EXPECT_EQ(percent(1, 3), "33 %");
   EXPECT_EQ(percent(0, 0), "-");

@@ -90,6 +90,18 @@ TEST_F(StarterJob, NeverPutsTheResultWhereAGlobWouldTakeItForInput) {
             (folder_ / "jobs/results_lagscape/wet.nc").string());
 }
 
+TEST_F(StarterJob, OfSeveralVariablesSaysHowTheResultIsNamed) {
+  SurveyReport report = survey({"data/a.nc"});
+  EXPECT_EQ(starter_job(report, job_path()).find("{variable}"), std::string::npos);
+  report.variables.push_back(report.variables.back());
+  report.variables.back().name = "snow";
+  report.variables.back().usable = true;
+  const std::string text = starter_job(report, job_path());
+  EXPECT_NE(text.find("For a list of variables, put {variable} into the name."), std::string::npos) << text;
+  EXPECT_NE(text.find("There are also: snow."), std::string::npos) << text;
+  EXPECT_EQ(read_back(text).input.variables.size(), 1U);
+}
+
 TEST_F(StarterJob, KeepsNamesWithBlanksAndQuotes) {
   const SurveyReport report = survey({"data/a \"b\".nc"});
   EXPECT_EQ(read_back(starter_job(report, job_path())).input.files, report.files);
