@@ -15,8 +15,8 @@ namespace {
 
 /// Values needed beyond the parameters of the preparation.
 constexpr double kSpareValues = 10;
-/// Below this many pairs (and a tenth of the values) an autocorrelation is not estimated.
-constexpr double kFewestPairs = 10;
+/// Below this many pairs an autocorrelation is not estimated.
+double fewest_pairs(double values) { return std::max(10.0, values / 10); }
 constexpr double kGapShare = 0.2, kShortYears = 10, kTiedShare = 0.5;
 constexpr std::size_t kLagChunk = 24;
 constexpr double kDetectionPower = 0.9;
@@ -298,7 +298,7 @@ void Analysis::Impl::follow_lags(std::uint8_t lanes) noexcept {
 /// >= 1.
 void Analysis::Impl::fill_lags(std::size_t lane, std::size_t first, std::size_t end, double& squares) noexcept {
   const double m = fit.count[lane], variance = fit.sum_squares[lane] / m;
-  const double fewest = std::max(kFewestPairs, m / 10);
+  const double fewest = fewest_pairs(m);
   const bool gaps = m < static_cast<double>(pairs[lane].span());
   for (std::size_t lag = first; lag < end; ++lag) {
     const std::size_t at = lag * kLanes + lane;
@@ -449,7 +449,9 @@ void Analysis::Impl::trends(const double* tile, std::uint8_t lanes) noexcept {
       pairs[lane].start(trend_bits.data(), lane, static_cast<std::size_t>(raw.first[lane]),
                         static_cast<std::size_t>(raw.last[lane]));
       const double variance = trend_fit.sum_squares[lane] / trend_fit.count[lane];
-      judge_trend(lane, trend_fit, lagged[lane] / (pairs[lane].at(1) + 1) / variance);
+      const double found = pairs[lane].at(1);
+      judge_trend(lane, trend_fit,
+                  found < fewest_pairs(trend_fit.count[lane]) ? kMissing : lagged[lane] / (found + 1) / variance);
     }
     return;
   }

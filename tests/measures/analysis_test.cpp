@@ -186,6 +186,33 @@ std::map<std::string_view, Cause> causes() {
           {"short_record", {[] { return settings_for(plain_columns(119)); }, almost_ten_years}}};
 }
 
+TEST(Analysis, NoLagGivesNoTimesAndNoVerdictOnMemory) {
+  // Every second step is missing, so there is no pair at lag 1.
+  Series x = example();
+  for (std::size_t t = 1; t < x.size(); t += 2) x[t] = kNaN;
+  const AnalysisSettings settings = settings_for(plain_columns(x.size()));
+  const Analysed cell(settings, x);
+  for (const double value : {cell->lag1, cell->lag1_corrected, cell->ar1_time, cell->integral, cell->geyer, cell->sokal,
+                             cell->e_folding, cell->time, cell->p}) {
+    EXPECT_TRUE(std::isnan(value)) << value;
+  }
+  EXPECT_EQ(cell->status & kNearUnitRoot, 0);
+  EXPECT_NE(cell->status & kManyGaps, 0);
+  EXPECT_NE(cell->status & kBeyondLagRange, 0);
+}
+
+TEST(Analysis, LimitsOfTheMeanNeedTenIndependentValues) {
+  Draw draw(9);
+  const Series strong = draw.autoregression(120, {0.95}), weak = draw.autoregression(120, {0.3});
+  const AnalysisSettings settings = settings_for(plain_columns(120));
+  const Analysed few(settings, strong), many(settings, weak);
+  ASSERT_LT(few->effective_size, 10);
+  EXPECT_TRUE(std::isnan(few->mean_low) && std::isnan(few->mean_high));
+  ASSERT_GT(many->effective_size, 10);
+  EXPECT_LT(many->mean_low, many->mean);
+  EXPECT_GT(many->mean_high, many->mean);
+}
+
 TEST(Status, EachBitHasACauseAndTellsOfIt) {
   const auto all = causes();
   std::set<std::string_view> names;
