@@ -224,7 +224,7 @@ void forge(const CommandLine& line) {
 
 std::string explained(const std::string& word) {
   if (auto help = command_help(word)) return *help;
-  return explain_text(word);
+  return explain_text(word, command_names());
 }
 
 /// All words or, if one of them is unknown, none.

@@ -215,12 +215,14 @@ std::string cell_of_table(std::string_view text) {
 
 }  // namespace
 
-std::string explain_text(const std::string& word) {
+std::string explain_text(const std::string& word, const std::vector<std::string>& others) {
   if (trim(word).empty()) return index();
   const std::vector<std::string> found = meanings(plain(word));
   if (found.empty()) {
+    std::vector<std::string> known = all_words();
+    known.insert(known.end(), others.begin(), others.end());
     throw Error(ErrorKind::usage,
-                fmt::format("there is nothing to explain about '{}'{}", word, did_you_mean(word, all_words())), "",
+                fmt::format("there is nothing to explain about '{}'{}", word, did_you_mean(word, known)), "",
                 "'lagscape explain' lists all maps, statuses, job keys, trend tests and methods");
   }
   return join(found, "\n");

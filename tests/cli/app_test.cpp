@@ -55,6 +55,7 @@ TEST_F(App, HelpAndExplanationsGoToStdoutWithCodeZero) {
     EXPECT_EQ(answer.err, "");
   }
   EXPECT_EQ(call({"explain", "prepare.min_share"}).out, explain_text("prepare.min_share"));
+  EXPECT_NE(call({"explain", "forg"}).err.find("did you mean 'forge'?"), std::string::npos);
   EXPECT_EQ(call({"explain", "plan"}).out, call({"plan", "--help"}).out);
   EXPECT_EQ(call({"explain", "field.rate", "season"}).out, explain_text("field.rate") + "\n" + explain_text("season"));
 }

@@ -97,7 +97,7 @@ TEST_F(StarterJob, OfSeveralVariablesSaysHowTheResultIsNamed) {
   report.variables.back().name = "snow";
   report.variables.back().usable = true;
   const std::string text = starter_job(report, job_path());
-  EXPECT_NE(text.find("For a list of variables, put {variable} into the name."), std::string::npos) << text;
+  EXPECT_NE(text.find("# {variable} into the name.\nfile = "), std::string::npos) << text;
   EXPECT_NE(text.find("There are also: snow."), std::string::npos) << text;
   EXPECT_EQ(read_back(text).input.variables.size(), 1U);
 }

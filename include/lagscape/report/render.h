@@ -22,8 +22,8 @@ namespace lagscape {
                                       const std::string& sites = {});
 
 /// `explain`: without a word the index; with a word a map, status, option (job key), test or method. Unknown words
-/// throw Error{usage} with the nearest names.
-[[nodiscard]] std::string explain_text(const std::string& word);
+/// throw Error{usage} with the nearest name, which may be one of `others`, words that the caller explains.
+[[nodiscard]] std::string explain_text(const std::string& word, const std::vector<std::string>& others = {});
 /// The README's table of maps, Markdown, from the catalogue.
 [[nodiscard]] std::string catalogue_markdown();
 
