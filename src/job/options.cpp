@@ -62,10 +62,9 @@ constexpr std::array kOptions = {
     JobOption{"input.time.step", "duration", "", "", kFree, "",
               "Mends a broken time axis: the time step, such as \"P1M\"."},
 
-    JobOption{
-        "prepare.season", "choice", "auto", "auto | none | calendar | harmonics", kFree, "",
-        "The season to take out. auto: calendar months for monthly or longer steps, harmonics for shorter ones, none "
-        "for a record shorter than two years."},
+    JobOption{"prepare.season", "choice", "auto", "auto | none | calendar | harmonics", kFree, "",
+              "The season to take out. auto: calendar months for monthly or longer steps, harmonics for shorter ones; "
+              "needs a record of two years or more, else no yearly season is taken out."},
     JobOption{"prepare.harmonics",
               "whole number",
               "4",

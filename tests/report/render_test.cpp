@@ -31,6 +31,7 @@ Record
              calendar; 3 of them in no file (missing)
   place      2 x 3 cells, lat 50.75 to 51.25, lon -4.25 to -3.25
   input      4 files
+  prepared   season: calendar; remove: linear
   set aside  values: 1 234 marked missing in the files, 2 infinite, 7 equal to
              missing_values of the job
              1 value in seasons that have fewer than two values
