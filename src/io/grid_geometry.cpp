@@ -219,9 +219,8 @@ std::vector<ColumnRun> runs_of(const std::vector<std::size_t>& order) {
 
 // "180 x 360 cells, lat ..., lon ..., 1 apart" or "12 sites, lat ..., lon ...".
 std::string covered(const Geometry& geometry) {
-  if (geometry.kind != GeometryKind::latlon)
-    return geometry.lat.empty() ? geometry.describe()
-                                : fmt::format("{}, {}", geometry.describe(), extent_words(geometry.lat, geometry.lon));
+  if (geometry.is_sites()) return fmt::format("{}, {}", geometry.describe(), extent_words(geometry.lat, geometry.lon));
+  if (geometry.kind != GeometryKind::latlon) return geometry.describe();
   if (geometry.rows < 2 || geometry.cols < 2) return geometry.describe();
   return fmt::format("{}; their centres are {} by {} degrees apart", geometry.describe(),
                      human_number(smallest_step(geometry.y.values)), human_number(smallest_step(geometry.x.values)));

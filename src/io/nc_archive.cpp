@@ -178,13 +178,15 @@ void place_steps(const JoinedAxis& joined, DuplicateRule rule, ArchivePlan& plan
 [[noreturn]] void refuse_overlap(const ArchivePlan& plan, const Overlap& overlap, std::size_t cell, double a,
                                  double b) {
   const std::string first = plan.files[overlap.file_a].path, other = plan.files[overlap.file_b].path;
+  const char* const remedy =
+      overlap.file_a == overlap.file_b ? "correct the times in the file" : "leave out one of the files";
   throw Error(ErrorKind::input,
               fmt::format("{} is stored twice with different values: {} and {} at {}",
                           plan.panel.axis.label(overlap.axis_step), std::isnan(a) ? "missing" : number_text(a),
                           std::isnan(b) ? "missing" : number_text(b), plan.panel.geometry.describe_cell(cell)),
               fmt::format("files: {} (time step {}) and {} (time step {}), variable: {}", first, overlap.step_a + 1,
                           other, overlap.step_b + 1, plan.panel.variable),
-              "leave out one of the files, or choose in [input]: duplicates = \"first\" or \"mean\"");
+              fmt::format("{}; or add to [input] of the job: duplicates = \"first\" (or \"mean\")", remedy));
 }
 
 void compare_overlaps(const ArchivePlan& plan, std::vector<Overlap> overlaps) {

@@ -172,7 +172,7 @@ void note_fills(const std::string& name, const CustomaryFills& fills, SurveyRepo
   std::vector<std::string> values, seen;
   for (const auto& [value, count] : suspects) {
     values.push_back(number_text(value));
-    seen.push_back(fmt::format("{} ({} times in the sample)", number_text(value), count));
+    seen.push_back(fmt::format("{} ({} in the sample)", number_text(value), count));
   }
   const bool others = fills.low() <= fills.high();
   const std::string rest = others ? fmt::format("the other values lie between {} and {}", human_number(fills.low()),
@@ -268,9 +268,30 @@ bool mend(const NcFile& file, SurveyedVariable& variable, SurveyReport& report) 
   return true;
 }
 
+// Refuses files of which only some have the dimension of which the first one needs an entry to be chosen.
+void require_dimensions(const SurveyReport& report, const SurveyedVariable& variable) {
+  for (const std::string& path : report.files) {
+    const NcFile file = NcFile::open(path);
+    const auto held = file.find(variable.name);
+    if (!held)
+      throw Error(ErrorKind::input, fmt::format("{} has no such variable, {} has", path, report.files.front()), "",
+                  "survey the files that hold it by themselves");
+    for (const auto& [name, value] : variable.select) {
+      const bool known =
+          std::any_of(held->dims.begin(), held->dims.end(), [&](const NcDim& d) { return d.name == name; });
+      if (!known)
+        throw Error(ErrorKind::input,
+                    fmt::format("these files do not belong together: in {} it has a dimension '{}', in {} it has none",
+                                report.files.front(), name, path),
+                    "", "survey the files of each archive by themselves");
+    }
+  }
+}
+
 void examine(const NcFile& file, SurveyedVariable& variable, SurveyReport& report) {
   try {
     choose(file, variable);
+    require_dimensions(report, variable);
     try {
       fill_in(*plan_archive(request_for(report, variable)), variable, report);
     } catch (const Error&) {

@@ -331,7 +331,9 @@ class ValueDecoder {
   }
 
   Seconds operator()(double value, std::size_t at, std::size_t count) const {
-    if (std::isnan(value)) fail(value, at, count, "is missing (NaN)");
+    if (std::isnan(value))
+      throw Error(ErrorKind::input, fmt::format("time value {} of {} is missing (NaN)", at + 1, count), where_,
+                  "correct the time in the file, or take this step out of it");
     if (!in_reach(value)) fail(value, at, count, fmt::format("in '{}' lies beyond any date", units_));
     switch (unit_.kind) {
       case UnitKind::seconds:

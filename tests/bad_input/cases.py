@@ -256,7 +256,7 @@ def sites_with_swapped_coordinates(folder):
 # --- jobs -----------------------------------------------------------------------------------------------------------------
 
 def job_file_missing(folder):
-    return Expect(3, [r"cannot be read", r"none\.toml"], arguments=("run", "none.toml"))
+    return Expect(3, [r"does not exist", r"none\.toml"], arguments=("run", "none.toml"))
 
 
 def job_with_broken_toml(folder):

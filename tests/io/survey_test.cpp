@@ -114,6 +114,11 @@ TEST(Survey, FilesOfDifferentArchivesAreNamed) {
   const std::string message = message_of([&] { static_cast<void>(survey_files(files, "", {})); });
   EXPECT_TRUE(has(message, "these files do not belong together: " + files[0] + " has rain, " + files[1] + " has wind"));
   EXPECT_TRUE(has(message, "by themselves"));
+  NcSample layered(folder / "layered.nc");
+  const auto [t, y, x] = grid_axes(layered, 2, "days since 2003-01-01");
+  layered.put(layered.var("rain", NC_FLOAT, {t, layered.dim("level", 3), y, x}), range(0, 1, 36));
+  const SurveyReport mixed = survey_files({layered.close(), files[0]}, "", {});
+  EXPECT_TRUE(has(named(mixed, "rain").why_not, "has a dimension 'level', in " + files[0] + " it has none"));
   files[1] = folder / "absent.nc";
   const std::string absent = message_of([&] { static_cast<void>(survey_files(files, "", {})); });
   EXPECT_TRUE(has(absent, "does not exist"));
@@ -156,7 +161,7 @@ TEST(Survey, CustomaryMarksOfMissingValuesAreToldWhenNotDeclared) {
   s.put(declared, {-9999, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12});
   s.put(s.var("empty", NC_FLOAT, {t, y, x}), std::vector<double>(12, kNaN));
   const SurveyReport report = survey_files({s.close()}, "", {});
-  EXPECT_TRUE(quirk(report, "rain: -999 (2 times in the sample) looks like"));
+  EXPECT_TRUE(quirk(report, "rain: -999 (2 in the sample) looks like"));
   EXPECT_TRUE(quirk(report, "between 0 and 200. If it is one, add to [input] of the job: missing_values = [-999]"));
   EXPECT_TRUE(quirk(report, "missing_values = [1e+20]"));
   EXPECT_TRUE(quirk(report, "missing_values = [-16384]"));
