@@ -1,4 +1,5 @@
-"""Ctrl-C, a request to end or a closed terminal while jobs run or data are forged end with exit code 130 and leave no result; on a terminal the progress line shows and goes away.
+"""Ctrl-C, a request to end or a closed terminal, while jobs run or data are forged, end the program with exit code 130 and
+leave no file; on a terminal the progress line of a run shows and goes away.
 
 usage: interrupt.py PROGRAM SOURCE_FOLDER
 
