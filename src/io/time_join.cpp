@@ -117,6 +117,25 @@ std::string uneven_remedy(const Stamps& stamps, const std::vector<Seconds>& gaps
   return "steps of unequal length (such as three in each month) are not supported by this version: " + remedy;
 }
 
+// Months with more than one stamp in some of them, where most are a month apart.
+void refuse_crowded_months(const Stamps& stamps, const std::vector<Seconds>& sorted_gaps) {
+  const Seconds typical = sorted_gaps[sorted_gaps.size() / 2];
+  if (typical < 28 * kDay || typical > 31 * kDay) return;
+  const auto month = [&](Seconds time) {
+    return month_number(stamps.calendar(), moment_of(stamps.calendar(), time).date);
+  };
+  const std::vector<Seconds>& times = stamps.times();
+  const auto pair =
+      std::adjacent_find(times.begin(), times.end(), [&](Seconds a, Seconds b) { return month(a) == month(b); });
+  if (pair == times.end()) return;
+  throw Error(ErrorKind::input,
+              fmt::format("times look monthly, but {} and {} lie in one month", iso_text(stamps.calendar(), pair[0]),
+                          iso_text(stamps.calendar(), pair[1])),
+              fmt::format("{} and {}", stamps.place(pair[0]), stamps.place(pair[1])),
+              "correct the times in the file; or, to take the mean of what lies in one month, add to [input] of the "
+              "job: time = { step = \"P1M\" } and, on a line of its own, duplicates = \"mean\"");
+}
+
 // Says which gap breaks the pattern: the commonest one, and the first that is no whole number of them.
 [[noreturn]] void refuse_uneven(const Stamps& stamps) {
   const std::vector<Seconds>& times = stamps.times();
@@ -124,6 +143,7 @@ std::string uneven_remedy(const Stamps& stamps, const std::vector<Seconds>& gaps
   for (std::size_t i = 1; i < times.size(); ++i) gaps.push_back(times[i] - times[i - 1]);
   std::vector<Seconds> sorted = gaps;
   std::sort(sorted.begin(), sorted.end());
+  refuse_crowded_months(stamps, sorted);
   Seconds common = sorted.front();
   std::ptrdiff_t most = 0;
   for (auto at = sorted.begin(); at != sorted.end();) {

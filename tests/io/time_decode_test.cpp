@@ -453,6 +453,17 @@ TEST(Join, StepsThatBeginAnewEachYearAreRefusedWithoutAdviceThatFails) {
   EXPECT_EQ(message.find("time = {"), std::string::npos);
 }
 
+TEST(Join, MonthlyStampsOfWhichTwoShareAMonthAreNamed) {
+  const std::vector<std::string> stamps{"2001-01-15", "2001-02-15", "2001-03-01", "2001-03-31",
+                                        "2001-05-15", "2001-06-15", "2001-07-15"};
+  const std::string message = message_of([&] { static_cast<void>(join_one(stamps)); });
+  EXPECT_HAS(message, "times look monthly, but 2001-03-01 and 2001-03-31 lie in one month");
+  EXPECT_HAS(message, "duplicates = \"mean\"");
+  const JoinedAxis joined = join_times({file_of("a.nc", stamps)}, TimeStep{StepKind::months, 1}, std::nullopt);
+  expect_axis(joined, "P1M", "2001-01-15", "2001-07-15", 7);
+  EXPECT_EQ(joined.overlaps.size(), 1U);
+}
+
 TEST(Join, StampsAnywhereInTheirMonthsAreSnappedWithANote) {
   const JoinedAxis joined =
       join_one({"2001-01-05", "2001-02-25", "2001-03-20", "2001-04-18", "2001-05-20", "2001-06-20"});
