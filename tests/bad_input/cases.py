@@ -181,16 +181,22 @@ def times_at_random(folder):
     return Expect(4, [r"equally spaced", r"good\.nc", r"fix:"], job())
 
 
+def steps_that_begin_anew_each_year(folder):
+    times = [day + 8 * i for day in (0, 365, 730, 1096) for i in range(46)][:MONTHS]
+    grid(folder / "good.nc", times=np.array(times, float))
+    return Expect(4, [r"commonest step is 8 days", r"begin anew each year", r"fix:.*months"], job())
+
+
 def time_that_is_no_number(folder):
     times = np.array(days((1990, 1), MONTHS), float)
     times[17] = np.nan
     grid(folder / "good.nc", times=times)
-    return Expect(4, [r"time value 18 of 180", r"good\.nc", r"fix:"], job())
+    return Expect(4, [r"time value 18 of 180", r"good\.nc", r"fix:.*correct the time"], job())
 
 
 def single_time_step(folder):
     grid(folder / "good.nc", data=values(1))
-    return Expect(4, [r"single time step", r"good\.nc", r"fix:"], job())
+    return Expect(4, [r"single time step", r"good\.nc", r"fix:.*all files of the archive"], job())
 
 
 def record_too_short_for_anything(folder):
@@ -420,6 +426,13 @@ def word_to_explain_unknown(folder):
 
 def survey_of_a_missing_file(folder):
     return Expect(4, [r"does not exist", r"none\.nc", r"fix:"], arguments=("survey", "none.nc"))
+
+
+def survey_of_two_archives_at_once(folder):
+    grid(folder / "good.nc")
+    grid(folder / "other.nc", variable="rain")
+    return Expect(4, [r"do not belong together", r"good\.nc has warmth", r"other\.nc has rain", r"fix:.*themselves"],
+                  arguments=("survey", "good.nc", "other.nc"))
 
 
 def survey_over_an_existing_job(folder):

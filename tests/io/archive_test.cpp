@@ -505,6 +505,8 @@ TEST(Archive, BoxKeepsTheSitesInIt) {
   const auto source = open(job);
   EXPECT_EQ(source->panel().geometry.site_names, (std::vector<std::string>{"Birch", "Carr"}));
   expect_same(all_values(*source), {10, 20, 11, 21, 12, 22, 13, 23});
+  job.box = {{60, 0, 70, 10}};
+  EXPECT_TRUE(has(refusal(job), "the data cover 3 sites, lat ")) << refusal(job);
 }
 
 TEST(Archive, FileOfOneSeriesIsASiteWithTheNameAndPlaceOfItsScalars) {
