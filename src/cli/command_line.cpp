@@ -1,7 +1,6 @@
 #include "cli/command_line.h"
 
 #include <fmt/format.h>
-#include <sched.h>
 
 #include <CLI/CLI.hpp>
 #include <algorithm>
@@ -13,18 +12,13 @@
 #include "lagscape/base/error.h"
 #include "lagscape/base/text.h"
 #include "lagscape/io/library.h"
+#include "lagscape/pipeline/run.h"
 #include "lagscape/version.h"
 
 namespace lagscape {
 namespace {
 
 constexpr int kMostThreads = 1024;
-
-int usable_cores() {
-  cpu_set_t set;
-  CPU_ZERO(&set);
-  return sched_getaffinity(0, sizeof set, &set) == 0 ? CPU_COUNT(&set) : 1;
-}
 
 std::string version_text() {
   return fmt::format("lagscape {}\n  compiler  {}, build type {}\n  netCDF    {}\n  threads   {} can be used here\n",

@@ -8,6 +8,7 @@
 #include <limits>
 
 #include "lagscape/base/text.h"
+#include "lagscape/measures/analysis.h"
 
 namespace lagscape {
 namespace {
@@ -100,7 +101,7 @@ constexpr std::array kOptions = {
               "whole number",
               "30",
               "",
-              {12, kInfinity},
+              {kFewestValues, kInfinity},
               "values",
               "Cells with fewer valid values have no estimates."},
 

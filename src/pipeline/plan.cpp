@@ -136,14 +136,12 @@ PreparedJob prepare_job(const JobSpec& whole, const std::string& variable, const
   prepared.source = open_archive(request_of(job, variable), log);
   plan.panel = prepared.source->panel();
   const TimeAxis& axis = plan.panel.axis;
-  const std::size_t fewest = std::max(job.prepare.min_count, kFewestValues);
+  const std::size_t fewest = job.prepare.min_count;
   if (axis.size() < fewest) {
-    throw Error(
-        ErrorKind::input, fmt::format("the record has {} time steps; at least {} are needed", axis.size(), fewest),
-        fmt::format("variable: {}, {} to {}", variable, axis.label(0), axis.label(axis.size() - 1)),
-        fmt::format(
-            "give more files or a longer period; prepare.min_count sets the smallest number of values ({} at least)",
-            kFewestValues));
+    throw Error(ErrorKind::input,
+                fmt::format("the record has {} time steps; at least {} are needed", axis.size(), fewest),
+                fmt::format("variable: {}, {} to {}", variable, axis.label(0), axis.label(axis.size() - 1)),
+                "give more files or a longer period; prepare.min_count sets the smallest number of values");
   }
   prepared.resolved = resolve_settings(job, axis);
   prepared.measures = chosen_measures(job);

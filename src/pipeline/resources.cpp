@@ -1,5 +1,7 @@
 #include "pipeline/resources.h"
 
+#include "lagscape/pipeline/run.h"
+
 #include <omp.h>
 #include <sys/resource.h>
 

@@ -10,7 +10,5 @@ namespace lagscape {
 [[nodiscard]] std::size_t peak_resident_bytes();
 /// CPU time of this process, all threads.
 [[nodiscard]] double cpu_seconds();
-/// Cores this process may run on.
-[[nodiscard]] int usable_cores();
 
 }  // namespace lagscape

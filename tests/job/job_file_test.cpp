@@ -226,7 +226,7 @@ INSTANTIATE_TEST_SUITE_P(
         Wrong{"WindowShort", "", "[prepare]\nremove = 'running-mean'\nwindow = 1\n", "", "2 or more"},
         Wrong{"MinShare", "", "[prepare]\nmin_share = 80\n", "", "found 80, expected 0 to 1"},
         Wrong{"MinCount", "", "[prepare]\nmin_count = 15.5\n", "", "a whole number"},
-        Wrong{"MinCountSmall", "", "[prepare]\nmin_count = 11\n", "", "min_count: found 11, expected 12 or more"},
+        Wrong{"MinCountSmall", "", "[prepare]\nmin_count = 11\n", "", "min_count: found 11, expected 21 or more"},
         Wrong{"MaxLag", "", "[memory]\nmax_lag = 0\n", "", "1 or more"},
         Wrong{"MaxLagText", "", "[memory]\nmax_lag = 'automatic'\n", "", "P5Y"},
         Wrong{"Order", "", "[memory]\norder = 11\n", "", "1 to memory.max_order, which is 10"},

@@ -80,6 +80,8 @@ struct RunReport {
 /// Called on the main thread as cells are finished.
 using Progress = std::function<void(std::size_t cells_done, std::size_t cells_total, double seconds)>;
 
+/// Cores this process may run on.
+[[nodiscard]] int usable_cores();
 /// Plans of a job: one per variable, in order. Throws Error.
 [[nodiscard]] std::vector<JobPlan> plan_job(const JobSpec& job, const RunOptions& options, const Log& log);
 /// Runs a job: one report per variable, in order. Throws Error; then no result under a final name is left of the
