@@ -128,8 +128,7 @@ class Correlogram:
     def partial(self, longest):
         """Durbin-Levinson on r; on the positive semi-definite S_k / S_0 if a partial autocorrelation leaves (-1, 1)."""
         found = durbin_levinson(self.r, min(longest, self.end))
-        self.inconsistent = bool(np.any(np.abs(found) >= 1))
-        if self.inconsistent:
+        if np.any(np.abs(found) >= 1):
             found = durbin_levinson(self.psd, min(longest, self.end))
         return np.concatenate([[np.nan], found, np.full(longest - len(found), np.nan)])
 
@@ -334,7 +333,7 @@ def describe(x, settings, axis):
     y = x[valid]
     status = 0
     parameters = axis.season_columns().shape[1] + 1
-    if m < max(settings.min_count, 20, parameters + 10) or share < settings.min_share:
+    if m < max(settings.min_count, 21, parameters + 10) or share < settings.min_share:
         status |= TOO_FEW
     if share < 0.8:
         status |= GAPS
@@ -402,18 +401,18 @@ def analyse(x, axis, settings):
     f1, at_bound = corrected(r[1:2], m, frequencies)
     out.update(lag1_autocorrelation=r[1], lag1_autocorrelation_corrected=f1[0])
     out["ar1_time"] = (1 + f1[0]) / (1 - f1[0])  # Choice: from the corrected coefficient
-    at_bound |= autoregression(fit, acf, n, z, frequencies, settings, out)
+    at_bound |= autoregression(fit, acf, n, z, frequencies, settings, x[np.isfinite(x)].mean(), out)
     if not line:  # the trend has a fit of its own, with its own residual
         fit = Fit(x, axis)
         r = Correlogram(fit.residual[inside]).r
         f1, trend_at_bound = corrected(r[1:2], m, axis.frequencies(True))
         at_bound |= trend_at_bound
     trend(fit, acf, n, f1[0], settings, out)
-    out["status"] |= (UNIT_ROOT if at_bound else 0) | (LAG_RANGE if beyond else 0) | (GAPS if acf.inconsistent else 0)
+    out["status"] |= (UNIT_ROOT if at_bound else 0) | (LAG_RANGE if beyond else 0)
     return out
 
 
-def autoregression(fit, acf, n, z, frequencies, settings, out):
+def autoregression(fit, acf, n, z, frequencies, settings, mean, out):
     """AR(p) by segment Burg with p >= 1; decorrelation time, effective sizes, limits of the mean."""
     m = fit.m
     fits = segment_burg(fit.residual, min(settings.max_order, m // 10))
@@ -438,9 +437,9 @@ def autoregression(fit, acf, n, z, frequencies, settings, out):
     # the degrees of freedom of the fit; SSE/m where the mean alone is fitted.
     spread = fit.sse / m * (m - 1) / (m - fit.q)
     half = stats.t.ppf(0.5 + settings.confidence / 2, size - 1) * np.sqrt(spread / (size - 1))
-    out["mean"] = fit.mean
+    out["mean"] = mean  # of all valid values, also those of seasons too short to be fitted
     if size >= 10:  # methods: no limits are given for fewer than ten independent values
-        out.update(mean_low=fit.mean - half, mean_high=fit.mean + half)
+        out.update(mean_low=mean - half, mean_high=mean + half)
     return at_bound
 
 
