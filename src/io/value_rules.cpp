@@ -80,6 +80,8 @@ std::size_t blank(double missing, std::size_t count, double* values) {
 // Stored values as doubles in, what they mean out. `count` is even.
 void unpack(const ValueRules& rules, std::size_t count, double* values, ValueCounts& counts) {
   for (const double missing : rules.missing) blank(missing, count, values);
+  std::size_t listed = 0;
+  for (const double missing : rules.job_missing) listed += blank(missing, count, values);
   const Doubles low = {rules.low, rules.low}, high = {rules.high, rules.high};
   const Doubles unpacked_low = {rules.unpacked_low, rules.unpacked_low},
                 unpacked_high = {rules.unpacked_high, rules.unpacked_high};
@@ -96,10 +98,10 @@ void unpack(const ValueRules& rules, std::size_t count, double* values, ValueCou
     outside += beyond;
     store_or_nan(value, endless | beyond, values + i);
   }
-  counts.fill += counted(fill);
+  counts.fill += counted(fill) - listed;  // the listed ones are NaN by now
+  counts.job_missing += listed;
   counts.infinite += counted(infinite);
   counts.out_of_range += counted(outside);
-  for (const double missing : rules.job_missing) counts.job_missing += blank(missing, count, values);
 }
 
 template <typename T>
@@ -221,6 +223,65 @@ void read_missing(const NcFile& file, const NcVariable& variable, const Attribut
   }
 }
 
+// ---- what the job says, in unpacked values --------------------------------------------------------------------------
+
+bool is_packed(const ValueRules& rules) { return rules.scale != 1 || rules.offset != 0; }
+bool is_real(RawType type) { return type == RawType::f32 || type == RawType::f64; }
+
+// How far the decimals of a job may be from the product that undoes the packing: rounding noise, also that of a
+// scale_factor kept as float32 (0.1F is 0.100000001), but never as far as the next stored integer.
+double packing_slack(const ValueRules& rules, double value) {
+  constexpr double kNoise = 1e-6, kFloatNoise = 6e-8, kMost = 0.25;  // shares of: a step, the value, a step
+  const double step = std::fabs(rules.scale);
+  return std::min(kNoise * step + kFloatNoise * (std::fabs(value - rules.offset) + std::fabs(rules.offset)),
+                  kMost * step);
+}
+
+// An end of the job's valid range; `outward` is -1 for the lower one. A job's 0.1 means what a file of floats holds for
+// it, and 3 of a packed 0.1 is not beyond 0.3.
+double range_end(const ValueRules& rules, double value, int outward) {
+  if (!std::isfinite(value)) return value;
+  if (is_packed(rules)) return value + outward * packing_slack(rules, value);
+  return rules.type == RawType::f32 ? static_cast<double>(static_cast<float>(value)) : value;
+}
+
+// "16-bit integers with scale_factor 0.1".
+std::string storage_words(const ValueRules& rules) {
+  std::string words =
+      fmt::format("{}-bit {}", 8 * rules.bytes(), is_real(rules.type) ? "floating-point numbers" : "integers");
+  if (rules.scale != 1) words += " with scale_factor " + number_text(rules.scale);
+  if (rules.offset != 0)
+    words += fmt::format(" {} add_offset {}", rules.scale != 1 ? "and" : "with", number_text(rules.offset));
+  return words;
+}
+
+// The stored values that mean this unpacked one.
+std::vector<double> stored_forms(const ValueRules& rules, double value) {
+  const double quotient = (value - rules.offset) / rules.scale, whole = std::round(quotient);
+  std::vector<double> forms;
+  const auto holds = [&](double stored) {
+    // as_stored() reads negative numbers of attributes as unsigned ones; a job means what it says.
+    const auto held = as_stored(stored, rules.type);
+    return held && std::isfinite(*held) && (is_real(rules.type) || *held == stored);
+  };
+  const bool near =
+      std::fabs(whole * rules.scale + rules.offset - value) <= (is_packed(rules) ? packing_slack(rules, value) : 0.0);
+  if (near && holds(whole)) forms.push_back(whole);
+  if (is_real(rules.type) && holds(quotient)) forms.push_back(*as_stored(quotient, rules.type));
+  return forms;
+}
+
+void list_missing(ValueRules& rules, double value, std::vector<std::string>& notes) {
+  if (!std::isfinite(value)) return;  // missing anyway
+  const std::vector<double> forms = stored_forms(rules, value);
+  for (const double stored : forms)
+    if (std::find(rules.job_missing.begin(), rules.job_missing.end(), stored) == rules.job_missing.end())
+      rules.job_missing.push_back(stored);
+  if (forms.empty())
+    notes.push_back(fmt::format("missing_values: {} marks nothing, since {} never are that value", number_text(value),
+                                storage_words(rules)));
+}
+
 }  // namespace
 
 std::size_t ValueRules::bytes() const {
@@ -256,16 +317,11 @@ ValueRules read_value_rules(const NcFile& file, const NcVariable& variable, cons
                 fmt::format("the packing cannot be undone: scale_factor {}, add_offset {}", rules.scale, rules.offset),
                 fmt::format("file: {}, variable: {}", file.path(), variable.path),
                 "correct the attributes of the file");
-  // A job's -99.9 means what a file of floats holds for it.
-  const bool plain_float = rules.type == RawType::f32 && rules.scale == 1 && rules.offset == 0;
-  const auto as_held = [&](double value) {
-    return plain_float ? static_cast<double>(static_cast<float>(value)) : value;
-  };
   if (request.valid_range) {
-    rules.unpacked_low = std::max(rules.unpacked_low, as_held((*request.valid_range)[0]));
-    rules.unpacked_high = std::min(rules.unpacked_high, as_held((*request.valid_range)[1]));
+    rules.unpacked_low = std::max(rules.unpacked_low, range_end(rules, (*request.valid_range)[0], -1));
+    rules.unpacked_high = std::min(rules.unpacked_high, range_end(rules, (*request.valid_range)[1], 1));
   }
-  for (const double value : request.missing_values) rules.job_missing.push_back(as_held(value));
+  for (const double value : request.missing_values) list_missing(rules, value, notes);
   return rules;
 }
 

@@ -13,15 +13,15 @@ namespace lagscape {
 enum class RawType { i8, u8, i16, u16, i32, u32, i64, u64, f32, f64 };
 
 /// How the stored values of one variable in one file become doubles. Tests come in this order: stored values against
-/// fill and missing values and NaN, infinity, stored values against the valid range; then scale and offset; then the
-/// valid range and the missing values of the job.
+/// fill and missing values and those that the job lists, NaN, infinity, stored values against the valid range; then
+/// scale and offset; then the valid range of the job.
 struct ValueRules {
   RawType type = RawType::f32;
   std::vector<double> missing;  ///< stored values that mean "missing"
   double low = -std::numeric_limits<double>::infinity(), high = std::numeric_limits<double>::infinity();  ///< stored
   double scale = 1, offset = 0;
   double unpacked_low = low, unpacked_high = high;
-  std::vector<double> job_missing;  ///< unpacked
+  std::vector<double> job_missing;  ///< stored values that the job lists, unpacked, as missing
 
   [[nodiscard]] std::size_t bytes() const;
   /// Decodes `count` neighbouring stored values; missing = NaN. What was set aside is added to `counts`.

@@ -104,6 +104,70 @@ TEST(ValueRules, JobsDecimalsMeanWhatAFloatHoldsForThem) {
               {kNaN, static_cast<double>(0.1F), kNaN});
 }
 
+TEST(ValueRules, ListedDecimalsAreFoundWherePackingIsNotExact) {
+  InputRequest job;
+  job.missing_values = {-999.9, 0.3};
+  const std::vector<std::int16_t> stored = {-9999, -9998, 3, 4};
+  for (const nc_type type : {NC_DOUBLE, NC_FLOAT}) {  // the type of scale_factor
+    const Decoded out = decode<std::int16_t>(
+        NC_SHORT, stored, [&](NcSample& s, int v) { s.numbers(v, "scale_factor", type, {0.1}); }, job);
+    EXPECT_TRUE(std::isnan(out.values[0]) && std::isnan(out.values[2]));
+    EXPECT_NEAR(out.values[1], -999.8, 1e-4);
+    EXPECT_NEAR(out.values[3], 0.4, 1e-6);
+    EXPECT_EQ(out.counts.job_missing, 2U);
+    EXPECT_EQ(out.counts.fill, 0U);
+    EXPECT_TRUE(out.notes.empty());
+  }
+  const auto offset = [](NcSample& s, int v) {
+    s.numbers(v, "scale_factor", NC_FLOAT, {0.01});
+    s.numbers(v, "add_offset", NC_FLOAT, {273.15});
+  };
+  job.missing_values = {-50.05};  // 273.15 - 323.2
+  EXPECT_EQ(decode<std::int16_t>(NC_SHORT, {-32320, -32319, -32321, 0}, offset, job).counts.job_missing, 1U);
+}
+
+TEST(ValueRules, ListedDecimalsAreFoundInPackedFloats) {
+  InputRequest job;
+  job.missing_values = {-999.9, 0.25};
+  const Decoded out = decode<float>(
+      NC_FLOAT, {-9999, 2.5F, 2.25F}, [](NcSample& s, int v) { s.numbers(v, "scale_factor", NC_FLOAT, {0.1}); }, job);
+  EXPECT_EQ(out.counts.job_missing, 2U);
+  EXPECT_TRUE(std::isnan(out.values[0]) && std::isnan(out.values[1]) && !std::isnan(out.values[2]));
+}
+
+TEST(ValueRules, ListedValueThatCannotBeStoredIsNoted) {
+  InputRequest job;
+  job.missing_values = {-999.95, 4000, 5};
+  const Decoded packed = decode<std::int16_t>(
+      NC_SHORT, {50, -9999}, [](NcSample& s, int v) { s.numbers(v, "scale_factor", NC_DOUBLE, {0.1}); }, job);
+  EXPECT_EQ(packed.counts.job_missing, 1U);
+  ASSERT_EQ(packed.notes.size(), 2U);
+  EXPECT_TRUE(has(packed.notes[0], "-999.95 marks nothing") && has(packed.notes[0], "16-bit integers"))
+      << packed.notes[0];
+  EXPECT_TRUE(has(packed.notes[1], "4000 marks nothing")) << packed.notes[1];
+  job.missing_values = {-1, 255};
+  const Decoded bytes = decode<std::uint8_t>(NC_UBYTE, {255, 1}, kNothing, job);
+  expect_same(bytes.values, {kNaN, 1});
+  ASSERT_EQ(bytes.notes.size(), 1U);
+  EXPECT_TRUE(has(bytes.notes[0], "-1 marks nothing")) << bytes.notes[0];
+}
+
+TEST(ValueRules, JobsRangeKeepsPackedValuesOnItsEdges) {
+  InputRequest job;
+  for (const nc_type type : {NC_DOUBLE, NC_FLOAT})
+    for (const double edge : {3.0, 30000.0}) {
+      job.valid_range = {{-edge / 10, edge / 10}};
+      const auto raw = static_cast<std::int16_t>(edge);
+      const Decoded out = decode<std::int16_t>(
+          NC_SHORT,
+          {raw, static_cast<std::int16_t>(-raw), static_cast<std::int16_t>(raw + 1),
+           static_cast<std::int16_t>(-raw - 1)},
+          [&](NcSample& s, int v) { s.numbers(v, "scale_factor", type, {0.1}); }, job);
+      EXPECT_FALSE(std::isnan(out.values[0]) || std::isnan(out.values[1]));
+      EXPECT_EQ(out.counts.out_of_range, 2U);
+    }
+}
+
 TEST(ValueRules, ValidMinimumAndMaximumBound) {
   const Decoded out = decode<std::int32_t>(NC_INT, {-1, 0, 50, 51}, [](NcSample& s, int v) {
     s.numbers(v, "valid_min", NC_INT, {0});
