@@ -171,9 +171,13 @@ std::string input_table(const SurveyReport& report, const SurveyedVariable& vari
 std::string starter_job(const SurveyReport& report, const std::string& path, const std::string& sites) {
   const SurveyedVariable* variable = starting_variable(report);
   if (variable == nullptr) {
+    std::vector<std::string> reasons;
+    for (const SurveyedVariable& one : report.variables) {
+      reasons.push_back(fmt::format("{}: {}{}{}", one.name, one.why_not, one.to_do.empty() ? "" : "; to do: ", one.to_do));
+    }
     throw Error(ErrorKind::input, "there is no variable to write a job for",
                 report.files.empty() ? "" : report.files.front(),
-                "the survey without --write-job says why each variable cannot be used, and what to do");
+                reasons.empty() ? "give files that hold a variable over time" : join(reasons, "\n         "));
   }
   const fs::path folder = folder_of(path);
   const std::string name = variable->long_name.empty() ? variable->name : variable->long_name;

@@ -99,7 +99,7 @@ std::string next_text(const SurveyReport& report, const std::string& sites, cons
                        written_job, job, job);
   }
   if (starting_variable(report) == nullptr) {
-    return "\nNext: do what is said above, then survey the files again.\n";
+    return "\nNext: do what is said above: lines in brackets go into a job file, the rest into the files.\n";
   }
   const bool all = report.files.size() > kMostFilesInCommand;
   return fmt::format("\nNext: have a job written to start from{}\n  {}\n",
