@@ -13,6 +13,7 @@
 #include "io/archive_plan.h"
 #include "io/mask_file.h"
 #include "io/step_reader.h"
+#include "io/time_bounds.h"
 #include "io/time_decode.h"
 #include "lagscape/base/text.h"
 
@@ -134,7 +135,9 @@ FileTimes read_times(const NcFile& file, const VariableLayout& layout, const Inp
   }
   if (request.time && request.time->unit) text.units = *request.time->unit;
   if (request.time && request.time->calendar) text.calendar = *request.time->calendar;
-  return decode_times(file.path(), name, values, text, notes);
+  FileTimes times = decode_times(file.path(), name, values, text, notes);
+  if (layout.time) read_middles(file, *layout.time, text, times, notes);
+  return times;
 }
 
 std::optional<TimeStep> given_step(const InputRequest& request) {
@@ -228,7 +231,9 @@ class ArchiveOpener {
       throw Error(ErrorKind::job, "no input files are named", "[input] files", "name at least one file");
     for (const std::string& path : request_.files) add(path);
     Panel& panel = plan_->panel;
+    const auto stamps = use_middles(times_, panel.notes);
     JoinedAxis joined = join_times(times_, given_step(request_), request_.period);
+    note_moved_stamps(times_, stamps, joined.axis, panel.notes);
     add_notes(panel.notes, joined.notes);
     panel.axis = joined.axis;
     panel.steps_present = joined.steps_present;

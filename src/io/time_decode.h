@@ -17,6 +17,7 @@ struct FileTimes {
   std::string file;
   Calendar calendar = Calendar::standard;
   std::vector<Seconds> times;
+  std::vector<Seconds> middles = {};  ///< of the periods covered, if the file has usable bounds of time
 };
 
 /// What a time variable says of itself, with the job's `time = {...}` already laid over it.
