@@ -46,7 +46,7 @@ constexpr std::array kOptions = {
               "Cells with a mask value of at most this are used."},
     JobOption{"input.mask.values", "list of numbers", "", "", kFree, "of the mask variable",
               "Cells whose mask value is one of these are used (instead of min and max)."},
-    JobOption{"input.missing_values", "list of numbers", "", "", kFree, "as stored in the file",
+    JobOption{"input.missing_values", "list of numbers", "", "", kFree, "of the variable, unpacked",
               "Values that mean missing, beside those that the file declares."},
     JobOption{"input.valid_range", "list of two numbers", "", "", kFree, "of the variable, unpacked",
               "Values outside this range count as missing. inf leaves an end open: [0.0, inf]."},
