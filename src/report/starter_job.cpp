@@ -173,7 +173,8 @@ std::string starter_job(const SurveyReport& report, const std::string& path, con
   if (variable == nullptr) {
     std::vector<std::string> reasons;
     for (const SurveyedVariable& one : report.variables) {
-      reasons.push_back(fmt::format("{}: {}{}{}", one.name, one.why_not, one.to_do.empty() ? "" : "; to do: ", one.to_do));
+      reasons.push_back(
+          fmt::format("{}: {}{}{}", one.name, one.why_not, one.to_do.empty() ? "" : "; to do: ", one.to_do));
     }
     throw Error(ErrorKind::input, "there is no variable to write a job for",
                 report.files.empty() ? "" : report.files.front(),
