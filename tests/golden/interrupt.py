@@ -6,10 +6,12 @@ usage: interrupt.py PROGRAM SOURCE_FOLDER
 Jobs are read from a named pipe, so that the signal comes for certain while the program works; a forge is stopped when its
 hidden file is seen.
 """
+import fcntl
 import os
 import pathlib
 import pty
 import signal
+import struct
 import subprocess
 import sys
 import tempfile
@@ -50,6 +52,24 @@ folder = "out"
 name = "made"
 """
 SIGNALS = (signal.SIGINT, signal.SIGTERM, signal.SIGHUP)
+
+
+def open_terminal(folder):
+    """Both ends of a terminal. An empty root without /dev/pts gets terminals of its own, mounted in the folder."""
+    try:
+        return pty.openpty()
+    except OSError:
+        place = pathlib.Path(folder) / "terminals"
+        place.mkdir()
+        subprocess.run(["mount", "-t", "devpts", "-o", "newinstance,ptmxmode=0666", "none", place], check=True)
+        try:
+            ours = os.open(place / "ptmx", os.O_RDWR | os.O_NOCTTY)
+            unlock, number = 0x40045431, 0x80045430  # TIOCSPTLCK and TIOCGPTN of Linux
+            fcntl.ioctl(ours, unlock, struct.pack("i", 0))
+            name = struct.unpack("i", fcntl.ioctl(ours, number, struct.pack("i", 0)))[0]
+            return ours, os.open(place / str(name), os.O_RDWR | os.O_NOCTTY)
+        finally:
+            subprocess.run(["umount", "--lazy", place], check=True)
 
 
 def start(folder, *words):
@@ -110,7 +130,7 @@ with tempfile.TemporaryDirectory() as folder:  # a second signal, of any kind, d
 with tempfile.TemporaryDirectory() as folder:
     path = pathlib.Path(folder) / "job.toml"
     path.write_text(job)
-    ours, theirs = pty.openpty()
+    ours, theirs = open_terminal(folder)
     process = subprocess.Popen([program, "run", path], cwd=folder, stdout=subprocess.PIPE, stderr=theirs, text=True)
     out, _ = process.communicate(timeout=300)
     os.close(theirs)
