@@ -43,7 +43,7 @@ double packed_number(const ForgedVariable& variable, double value) {
 double stored_value(const ForgedVariable& variable, double value) {
   if (variable.packed()) return packed_number(variable, value) * variable.scale + variable.offset;
   if (variable.type == StoredType::f64) return value;
-  if (std::abs(value) <= double{std::numeric_limits<float>::max()})
+  if (std::abs(value) <= static_cast<double>(std::numeric_limits<float>::max()))
     return static_cast<double>(static_cast<float>(value));
   throw Error(ErrorKind::job, fmt::format("a value of {} does not fit into type float", human_number(value, 6)),
               "variable: " + variable.name, "use type = \"double\"");

@@ -102,7 +102,7 @@ class RecipeReader {
   }
   /// Exactly `count` finite numbers, or nothing.
   std::optional<std::vector<double>> several(const std::string& key, std::size_t count, const std::string& what) {
-    const auto values = toml_.numbers(key);
+    auto values = toml_.numbers(key);
     if (!values) return std::nullopt;
     const bool finite = std::all_of(values->begin(), values->end(), [](double v) { return std::isfinite(v); });
     if (values->size() == count && finite) return values;

@@ -128,7 +128,7 @@ std::optional<std::uint64_t> classic_bytes_needed(std::istream& in, std::uint64_
   std::array<char, 4> magic{};
   in.read(magic.data(), magic.size());
   if (!in || magic[0] != 'C' || magic[1] != 'D' || magic[2] != 'F') return std::nullopt;
-  const int version = magic[3];
+  const int version = static_cast<unsigned char>(magic[3]);
   if (version != 1 && version != 2 && version != 5) return std::nullopt;
   HeaderReader header(in, file_size - magic.size(), version);
   std::uint64_t records = header.count();

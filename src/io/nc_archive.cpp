@@ -48,7 +48,7 @@ std::string filter_words(const NcVariable& variable) {
 std::string storage_words(const NcFile& file, const NcVariable& variable) {
   int storage = NC_CONTIGUOUS;
   std::vector<std::size_t> chunk(variable.dims.size() + 1);
-  const std::string kind = file.kind();
+  std::string kind = file.kind();
   if (kind.starts_with("CDF") || nc_inq_var_chunking(variable.group, variable.id, &storage, chunk.data()) != NC_NOERR)
     return kind;
   if (storage != NC_CHUNKED) return kind + ", contiguous";

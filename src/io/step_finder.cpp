@@ -241,7 +241,7 @@ bool fixed_is_better(Calendar calendar, std::span<const Seconds> times, const St
 }  // namespace
 
 std::optional<StepFit> find_step(Calendar calendar, std::span<const Seconds> times) {
-  const auto months = find_months(calendar, times);
+  auto months = find_months(calendar, times);
   if (months && months->largest_shift == 0) return months;
   auto fixed = find_fixed(times);
   if (months && fixed && fixed_is_better(calendar, times, *fixed, *months)) return fixed;

@@ -104,7 +104,7 @@ std::optional<TimeText> mended_time(const NcFile& file, const SurveyedVariable& 
   if (!layout.time || layout.time->type == NC_CHAR || layout.time->type == NC_STRING) return std::nullopt;
   const Attributes attributes = file.attributes(*layout.time);
   const std::string unit = lower(text_attribute(attributes, "units"));
-  if (const auto found = described_date(attributes, unit)) return found;
+  if (auto found = described_date(attributes, unit)) return found;
   return written_dates(unit, file.doubles(*layout.time));
 }
 
@@ -277,8 +277,8 @@ void require_dimensions(const SurveyReport& report, const SurveyedVariable& vari
       throw Error(ErrorKind::input, fmt::format("{} has no such variable, {} has", path, report.files.front()), "",
                   "survey the files that hold it by themselves");
     for (const auto& [name, value] : variable.select) {
-      const bool known =
-          std::any_of(held->dims.begin(), held->dims.end(), [&](const NcDim& d) { return d.name == name; });
+      const bool known = std::any_of(held->dims.begin(), held->dims.end(),
+                                     [&wanted = name](const NcDim& d) { return d.name == wanted; });
       if (!known)
         throw Error(ErrorKind::input,
                     fmt::format("these files do not belong together: in {} it has a dimension '{}', in {} it has none",

@@ -93,7 +93,7 @@ void unpack(const ValueRules& rules, std::size_t count, double* values, ValueCou
     const Masks endless = (stored == infinity) | (stored == -infinity);
     const Masks beyond =
         ((stored < low) | (stored > high) | (value < unpacked_low) | (value > unpacked_high)) & ~endless;
-    fill += stored != stored;
+    fill += stored != stored;  // true of NaN only  NOLINT(misc-redundant-expression)
     infinite += endless;
     outside += beyond;
     store_or_nan(value, endless | beyond, values + i);
