@@ -9,26 +9,14 @@
 #include <vector>
 
 #include "lagscape/io/result_writer.h"
+#include "support/geometries.h"
 
 namespace {
 
 using namespace lagscape;
 
-std::vector<double> steps(double first, double step, std::size_t count) {
-  std::vector<double> out(count);
-  for (std::size_t i = 0; i < count; ++i) out[i] = first + step * static_cast<double>(i);
-  return out;
-}
-
-Geometry degrees(std::vector<double> lat, std::vector<double> lon) {
-  Geometry place;
-  place.kind = GeometryKind::latlon;
-  place.rows = lat.size();
-  place.cols = lon.size();
-  place.y = {"lat", "latitude", "degrees_north", std::move(lat), {}, {}};
-  place.x = {"lon", "longitude", "degrees_east", std::move(lon), {}, {}};
-  return place;
-}
+using test::degrees;
+using test::steps;
 
 Geometry projected(const std::string& unit, double scale) {
   Geometry place;

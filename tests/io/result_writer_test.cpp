@@ -18,6 +18,7 @@
 #include "io/result_writer_netcdf.h"
 #include "io/result_writer_rules.h"
 #include "lagscape/base/error.h"
+#include "support/geometries.h"
 
 namespace lagscape {
 namespace {
@@ -26,19 +27,11 @@ namespace fs = std::filesystem;
 constexpr double kMissing = std::numeric_limits<double>::quiet_NaN();
 
 // ---- results to write ----
-std::vector<double> steps(double first, double step, std::size_t count) {
-  std::vector<double> out(count);
-  for (std::size_t i = 0; i < count; ++i) out[i] = first + step * static_cast<double>(i);
-  return out;
-}
+using test::steps;
 
 Geometry degrees(std::vector<double> lat, std::vector<double> lon) {
-  Geometry place;
-  place.kind = GeometryKind::latlon;
-  place.rows = lat.size();
-  place.cols = lon.size();
-  place.y = {"lat", "latitude", "degrees_north", std::move(lat), {}, {{"long_name", "latitude of centre"}}};
-  place.x = {"lon", "longitude", "degrees_east", std::move(lon), {}, {}};
+  Geometry place = test::degrees(std::move(lat), std::move(lon));
+  place.y.extra = {{"long_name", "latitude of centre"}};
   return place;
 }
 
